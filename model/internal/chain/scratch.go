@@ -1,0 +1,110 @@
+package chain
+
+import "math/rand/v2"
+
+// Scratch is the working memory of runs. Its zero value is ready; reuse saves allocation. It belongs to one goroutine.
+//
+// A problem's rows are packed into it in a random order, so that an epoch walks memory forward and still meets the
+// rows in an order that has nothing to do with their labels.
+type Scratch struct {
+	n, dense, trees int
+	value           float64 // of a leaf indicator
+	lambda          float64
+
+	perm   []int32   // packed row → entry of the problem's Rows
+	x      []float32 // n×dense
+	leaves []int32   // n×trees, already offset by dense
+	y      []float64 // ±1
+	omega  []float64
+	ratio  []float64 // λ/ω
+	denom  []float64 // ‖x‖² + λ/ω
+
+	w      []float64 // dense, then leaves
+	alpha  []float64
+	keep   []bool
+	margin []float64 // as of the last renewal
+	active []int32   // packed rows an epoch visits
+	blocks []int32   // starts of runs of active, shuffled each epoch
+
+	epochs int // since load
+}
+
+// resize gives s length n without keeping its contents.
+func resize[T any](s []T, n int) []T {
+	if cap(s) < n {
+		return make([]T, n)
+	}
+	return s[:n]
+}
+
+// load packs p with all rows kept, every α and weight zero.
+func (s *Scratch) load(p *Problem, rng *rand.Rand) {
+	p.check()
+	n := len(p.Rows)
+	s.n, s.dense, s.trees, s.value, s.lambda, s.epochs = n, p.Dense, p.Trees, p.LeafValue, p.Lambda, 0
+	s.perm = resize(s.perm, n)
+	s.x, s.leaves = resize(s.x, n*p.Dense), resize(s.leaves, n*p.Trees)
+	s.y, s.omega = resize(s.y, n), resize(s.omega, n)
+	s.ratio, s.denom = resize(s.ratio, n), resize(s.denom, n)
+	s.w, s.alpha = resize(s.w, p.Columns()), resize(s.alpha, n)
+	s.keep, s.margin = resize(s.keep, n), resize(s.margin, n)
+	s.active = resize(s.active, n)[:0]
+	for i := range s.perm {
+		s.perm[i] = int32(i)
+	}
+	rng.Shuffle(n, func(a, b int) { s.perm[a], s.perm[b] = s.perm[b], s.perm[a] })
+	for i, k := range s.perm {
+		s.pack(p, i, int(k))
+	}
+	s.reset()
+}
+
+// pack copies entry k of the problem to packed row i.
+func (s *Scratch) pack(p *Problem, i, k int) {
+	r := int(p.Rows[k])
+	x := s.x[i*s.dense : (i+1)*s.dense]
+	copy(x, p.X[r*p.Dense:(r+1)*p.Dense])
+	norm := float64(p.Trees) * p.LeafValue * p.LeafValue
+	for _, v := range x {
+		norm += float64(v) * float64(v)
+	}
+	to := s.leaves[i*s.trees : (i+1)*s.trees]
+	for t, c := range p.Leaves[r*p.Trees : (r+1)*p.Trees] {
+		to[t] = c + int32(s.dense)
+	}
+	s.y[i], s.omega[i] = float64(p.Y[k]), p.Omega[k]
+	s.ratio[i] = p.Lambda / p.Omega[k]
+	s.denom[i] = norm + s.ratio[i]
+}
+
+// reset puts the run back to zero weights with every row kept.
+func (s *Scratch) reset() {
+	clear(s.w)
+	clear(s.alpha)
+	for i := range s.keep {
+		s.keep[i] = true
+	}
+}
+
+// state copies the run's state out, in the order of the problem's rows.
+func (s *Scratch) state(q, j float64, status Status) State {
+	st := State{W: make([]float64, len(s.w)), Alpha: make([]float64, s.n), Keep: make([]bool, s.n),
+		Q: q, J: j, Status: status, Epochs: s.epochs}
+	copy(st.W, s.w)
+	for i, k := range s.perm {
+		st.Alpha[k], st.Keep[k] = s.alpha[i], s.keep[i]
+	}
+	return st
+}
+
+// restore takes α and flags from st and rebuilds the weights from them.
+func (s *Scratch) restore(st *State) {
+	clear(s.w)
+	for i, k := range s.perm {
+		s.keep[i], s.alpha[i] = st.Keep[k], 0
+		if a := st.Alpha[k]; s.keep[i] && a > 0 {
+			s.alpha[i] = a
+			s.add(i, a*s.y[i])
+		}
+	}
+}
