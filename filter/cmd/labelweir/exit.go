@@ -1,0 +1,76 @@
+package main
+
+import (
+	"context"
+	"errors"
+	"fmt"
+	"os"
+	"strings"
+	"syscall"
+
+	"labelweir/filter/cmd/labelweir/internal/argv"
+)
+
+// The exit codes. Those from 64 on have the meaning that BSD's sysexits.h gives them.
+const (
+	exitFailed  = 1   // failed while running
+	exitGate    = 3   // more wrong labels than --gate allows
+	exitUsage   = 64  // unknown command or flag
+	exitInput   = 65  // the input can't be read
+	exitCreate  = 73  // an output can't be created
+	exitWrite   = 74  // an output can't be written to its end
+	exitConfig  = 78  // the settings are wrong
+	exitSignals = 128 // plus the signal's number: 130 for Ctrl-C, 143 for SIGTERM
+)
+
+// failure is an error with the exit code it ends the program with.
+type failure struct {
+	code int
+	err  error
+}
+
+func (f *failure) Error() string { return f.err.Error() }
+func (f *failure) Unwrap() error { return f.err }
+
+// usagef makes a fault in how the command was called.
+func usagef(format string, args ...any) error {
+	return &failure{exitUsage, fmt.Errorf(format, args...)}
+}
+
+// stopped is the cause of a context that a signal has ended.
+type stopped struct{ signal os.Signal }
+
+func (s stopped) Error() string { return "stopped by " + s.signal.String() }
+
+// code gives the exit code of what a command returned.
+func code(ctx context.Context, err error) int {
+	var f *failure
+	var a *argv.Error
+	var s stopped
+	switch {
+	case err == nil:
+		return 0
+	case errors.Is(err, context.Canceled) && errors.As(context.Cause(ctx), &s):
+		if n, ok := s.signal.(syscall.Signal); ok {
+			return exitSignals + int(n)
+		}
+		return exitFailed
+	case errors.As(err, &f):
+		return f.code
+	case errors.As(err, &a):
+		return exitUsage
+	}
+	return exitFailed
+}
+
+// say writes err for a person to read: one line a fault, each beginning with the program's name.
+func say(ctx context.Context, p *process, err error) {
+	var s stopped
+	if errors.Is(err, context.Canceled) && errors.As(context.Cause(ctx), &s) {
+		fmt.Fprintf(p.err, "labelweir: %v; no output was written\n", s)
+		return
+	}
+	for line := range strings.Lines(strings.TrimRight(err.Error(), "\n")) {
+		fmt.Fprintf(p.err, "labelweir: %s\n", strings.TrimRight(line, "\n"))
+	}
+}
