@@ -6,23 +6,21 @@ import (
 	"slices"
 )
 
-// Stage is one step of graduation: up to Epochs epochs at Q, ended early when the flags stand still and no projected
-// gradient is above Tolerance.
+// Stage is one step of graduation: up to Rounds renewals of the flags at Q, each followed by as many epochs as w needs
+// to follow (2 where rows are many, up to 8 where they are few), ended early when the flags stand still and no
+// projected gradient, in units of the margin, is above Tolerance.
 type Stage struct {
 	Q         float64
-	Epochs    int
+	Rounds    int
 	Tolerance float64
 }
-
-// renewEvery is the number of epochs between renewals of the flags.
-const renewEvery = 2
 
 // Path is the default way down for snapshots at the values of want: from the convex squared hinge (q = −Inf) through
 // −2, −1.4, −1, −0.75, −0.5, −0.3, −0.15 and 0, with want's own values among them, ending at the largest of them.
 func Path(want []float64) []Stage {
 	const loose, fine = 3e-2, 1e-2
 	end := slices.Max(want)
-	path := []Stage{{math.Inf(-1), 8, loose}}
+	path := []Stage{{math.Inf(-1), 4, loose}}
 	qs := []float64{-2, -1.4, -1, -.75, -.5, -.3, -.15, 0}
 	for _, q := range want {
 		if !slices.Contains(qs, q) && !math.IsInf(q, -1) {
@@ -34,14 +32,14 @@ func Path(want []float64) []Stage {
 		if q > end {
 			break
 		}
-		st := Stage{q, 4, loose}
+		st := Stage{q, 2, loose}
 		if slices.Contains(want, q) {
-			st = Stage{q, 10, fine}
+			st = Stage{q, 20, fine}
 		}
 		path = append(path, st)
 	}
 	if slices.Contains(want, math.Inf(-1)) {
-		path[0].Epochs, path[0].Tolerance = 20, fine
+		path[0].Rounds, path[0].Tolerance = 20, fine
 	}
 	return path
 }
@@ -69,24 +67,4 @@ func Graduated(p *Problem, path []Stage, want []float64, rng *rand.Rand, s *Scra
 		panic("chain: a wanted q is not on the path, or is on it twice")
 	}
 	return out
-}
-
-// descend alternates renewals of the flags with epochs at one q. It leaves margins measured at the final w and returns
-// J there.
-func (s *Scratch) descend(st Stage, rng *rand.Rand) (j float64, status Status) {
-	for e := 0; e < st.Epochs; {
-		s.measure(st.Q)
-		changed := s.renew(st.Q)
-		s.enlist()
-		var worst float64
-		for range min(renewEvery, st.Epochs-e) {
-			worst = s.epoch(rng)
-			e++
-		}
-		if changed == 0 && worst <= st.Tolerance {
-			status = Converged
-			break
-		}
-	}
-	return s.measure(st.Q), status
 }

@@ -26,7 +26,18 @@ type Scratch struct {
 	active []int32   // packed rows an epoch visits
 	blocks []int32   // starts of runs of active, shuffled each epoch
 
+	hold   int // epochs between renewals of the flags
 	epochs int // since load
+
+	best mark // lowest J met at the present q
+}
+
+// mark is a point of a run that it can return to.
+type mark struct {
+	j     float64
+	w     []float64
+	alpha []float64
+	keep  []bool
 }
 
 // resize gives s length n without keeping its contents.
@@ -37,7 +48,7 @@ func resize[T any](s []T, n int) []T {
 	return s[:n]
 }
 
-// load packs p with all rows kept, every α and weight zero.
+// load packs p with all rows kept, every α and weight zero; in the rows' own order without an rng.
 func (s *Scratch) load(p *Problem, rng *rand.Rand) {
 	p.check()
 	n := len(p.Rows)
@@ -52,11 +63,42 @@ func (s *Scratch) load(p *Problem, rng *rand.Rand) {
 	for i := range s.perm {
 		s.perm[i] = int32(i)
 	}
-	rng.Shuffle(n, func(a, b int) { s.perm[a], s.perm[b] = s.perm[b], s.perm[a] })
+	if rng != nil {
+		rng.Shuffle(n, func(a, b int) { s.perm[a], s.perm[b] = s.perm[b], s.perm[a] })
+	}
 	for i, k := range s.perm {
 		s.pack(p, i, int(k))
 	}
+	s.hold = s.holdFor()
+	s.best.w, s.best.alpha, s.best.keep = resize(s.best.w, len(s.w)), resize(s.best.alpha, n), resize(s.best.keep, n)
 	s.reset()
+}
+
+// holdFor is the number of epochs that w needs to follow a change of the flags. An epoch of dual ascent shrinks the
+// distance to the optimum about by ‖x‖²/(λ/ω) + 1 (Shalev-Shwartz & Zhang 2013), so two do when rows are many and the
+// few rows of a small problem, each of which weighs more than λ, need some more.
+func (s *Scratch) holdFor() int {
+	const least, most = 2, 8
+	var load float64
+	for i, r := range s.ratio {
+		load += (s.denom[i] - r) / r
+	}
+	return min(most, least+int(2*load/float64(max(1, s.n))))
+}
+
+// remember makes the present point, whose objective is j, the best one.
+func (s *Scratch) remember(j float64) {
+	s.best.j = j
+	copy(s.best.w, s.w)
+	copy(s.best.alpha, s.alpha)
+	copy(s.best.keep, s.keep)
+}
+
+// recall goes back to the best point.
+func (s *Scratch) recall() {
+	copy(s.w, s.best.w)
+	copy(s.alpha, s.best.alpha)
+	copy(s.keep, s.best.keep)
 }
 
 // pack copies entry k of the problem to packed row i.

@@ -1,0 +1,76 @@
+package chain
+
+import (
+	"math"
+	"math/rand/v2"
+)
+
+// descend alternates renewals of the flags with epochs at one q and ends at the point of the lowest J it met, its own
+// start included; J along a path whose q rises therefore never rises. It returns that J.
+func (s *Scratch) descend(st Stage, rng *rand.Rand) (j float64, status Status) {
+	s.remember(s.measure(st.Q))
+	return s.cycle(st, st.Rounds*s.hold, rng)
+}
+
+// cycle is descend, for so many epochs, from a point already measured and with a best point already remembered.
+func (s *Scratch) cycle(st Stage, epochs int, rng *rand.Rand) (j float64, status Status) {
+	for e := 0; e < epochs && status != Converged; {
+		changed := s.renew(st.Q)
+		worst, used := s.ascend(min(s.hold, epochs-e), st.Tolerance, rng)
+		e += used
+		if j := s.measure(st.Q); j < s.best.j {
+			s.remember(j)
+		}
+		if changed == 0 && worst <= st.Tolerance && s.steady(st.Q) {
+			status = Converged
+		}
+	}
+	s.recall()
+	return s.best.j, status
+}
+
+// ascend makes up to n epochs with the flags held, fewer when no projected gradient is above tol any more.
+func (s *Scratch) ascend(n int, tol float64, rng *rand.Rand) (worst float64, used int) {
+	s.enlist()
+	for used < n {
+		worst = s.epoch(rng)
+		used++
+		if worst <= tol {
+			break
+		}
+	}
+	return worst, used
+}
+
+// steady tells whether the margins of the last measure ask for the flags as they are.
+func (s *Scratch) steady(q float64) bool {
+	for i, m := range s.margin {
+		if s.keep[i] != (m > q) {
+			return false
+		}
+	}
+	return true
+}
+
+// Descend is plain block coordinate descent at one q: the convex problem solved out, then flags and weights by turns,
+// the weights solved out each time, until the flags stand still. It is what the other runs are measured against.
+func Descend(p *Problem, q float64, rng *rand.Rand, s *Scratch) State {
+	const epochs, rounds, tolerance = 300, 200, 1e-3
+	s.load(p, rng)
+	s.measure(math.Inf(-1))
+	s.ascend(epochs, tolerance, rng)
+	s.remember(s.measure(q))
+	status := Limit
+	for range rounds {
+		if s.renew(q) == 0 {
+			status = Converged
+			break
+		}
+		s.ascend(epochs, tolerance, rng)
+		if j := s.measure(q); j < s.best.j {
+			s.remember(j)
+		}
+	}
+	s.recall()
+	return s.state(q, s.best.j, status)
+}
