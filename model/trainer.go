@@ -2,6 +2,14 @@ package model
 
 import (
 	"context"
+	"fmt"
+	"math"
+	"os"
+	"strings"
+
+	"labelweir/model/internal/chain"
+	"labelweir/model/internal/learn"
+	"labelweir/model/internal/noise"
 )
 
 // Options of a Trainer.
@@ -43,8 +51,89 @@ func NewTrainer(o Options) *Trainer { return &Trainer{opt: o} }
 // Fit trains on t, which it neither keeps nor changes. The first call searches encoder, λ and q (cold); later ones
 // start from the last result (warm). Errors: ErrTable, ErrTooFew, ErrOneClass, or the context's.
 func (tr *Trainer) Fit(ctx context.Context, t *Table) (*Result, error) {
-	if err := t.check(); err != nil {
+	in, err := newIntake(t, tr.opt.Folds)
+	if err != nil {
 		return nil, err
 	}
-	return nil, ErrTooFew
+	nd := len(learn.Designs())
+	n, k := len(in.rows), in.data.Classes
+	out := &heldOut{linear: make([][]float64, nd*len(gridLambda)*len(gridQ))}
+	for i := range out.votes {
+		out.votes[i] = make([]float64, n*k)
+	}
+	for i := range out.linear {
+		out.linear[i] = make([]float64, n*k)
+	}
+	var settings []learn.Linear
+	err = each(ctx, tr.opt.Folds, tr.opt.Workers, func(i int, s *chain.Scratch) error {
+		sc := in.trainFold(i, nd, tr.opt.Seed, s)
+		in.score(sc, i, out)
+		if i == 0 {
+			settings = sc.Linear
+		}
+		return nil
+	})
+	if err != nil {
+		return nil, err
+	}
+	var members [][]float64
+	var names []string
+	use := os.Getenv("LW_MEMBERS")
+	if use == "" {
+		use = "raw,cleaned,d0,d1,d2"
+	}
+	for _, u := range strings.Split(use, ",") {
+		switch u {
+		case "raw":
+			members, names = append(members, out.votes[0]), append(names, u)
+		case "cleaned":
+			members, names = append(members, out.votes[1]), append(names, u)
+		default:
+			d := int(u[1] - '0')
+			best, at := math.Inf(-1), -1
+			for i := range settings {
+				if settings[i].Design == d {
+					if _, e := noise.Quick(in.noiseData(out.linear[i])); e > best {
+						best, at = e, i
+					}
+				}
+			}
+			members, names = append(members, out.linear[at]), append(names, fmt.Sprintf("%s λ=%g q=%g", learn.Designs()[d].Name, settings[at].Lambda, settings[at].Q))
+		}
+	}
+	data := in.noiseData(members...)
+	layer, facts := noise.Fit(data)
+	if os.Getenv("LW_DEBUG") != "" {
+		for i, m := range names {
+			fmt.Fprintf(os.Stderr, "  %-28s %.3f\n", m, layer.Models[0].P.A[i])
+		}
+		for i := range facts.Names {
+			fmt.Fprintf(os.Stderr, "  model %-28s %.2f %v\n", facts.Names[i], facts.Evidence[i], facts.Refused[i])
+		}
+	}
+	res := &Result{Snapshot: &Snapshot{}, Scores: make([]Score, t.Rows())}
+	for i := range res.Scores {
+		res.Scores[i] = Score{P: math.NaN(), Margin: math.NaN(), Implied: -1, Reason: in.reason[i]}
+	}
+	j := layer.NewJudge()
+	for i, r := range in.rows {
+		src := -1
+		if in.data.Source != nil {
+			src = int(in.data.Source[i])
+		}
+		v := j.Row(members, i, int(in.data.Labels[i]), src)
+		res.Scores[r] = Score{P: v.Wrong, Margin: v.Margin, Implied: int32(v.Implied)}
+	}
+	f := &res.Snapshot.facts
+	f.Rows, f.Classes, f.ClassRows, f.Sources = n, in.classes, in.counts, in.sources
+	f.Threshold = 0.95
+	f.Noise.Share = Estimate{facts.Share.Value, facts.Share.Low, facts.Share.High, n}
+	for i := range k {
+		f.Noise.Flip = append(f.Noise.Flip, nil)
+		for c := range k {
+			x := facts.Flip[i*k+c]
+			f.Noise.Flip[i] = append(f.Noise.Flip[i], Estimate{x.Value, x.Low, x.High, in.counts[i]})
+		}
+	}
+	return res, nil
 }

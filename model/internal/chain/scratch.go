@@ -30,6 +30,8 @@ type Scratch struct {
 	epochs int // since load
 
 	best mark // lowest J met at the present q
+
+	lattice lattice // of annealed runs
 }
 
 // mark is a point of a run that it can return to.

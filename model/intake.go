@@ -1,0 +1,189 @@
+package model
+
+import (
+	"cmp"
+	"fmt"
+	"math"
+	"slices"
+
+	"labelweir/model/internal/encode"
+	"labelweir/model/internal/forest"
+	"labelweir/model/internal/learn"
+)
+
+// intake is a table made ready for learning: usable rows only, classes and sources in the order of their names.
+type intake struct {
+	rows    []int32 // table rows that are used
+	reason  []Reason
+	classes []string
+	counts  []int // rows of each class
+	sources []string
+	fields  []field
+	encoder *encode.Encoder
+	data    *learn.Data
+	fold    []uint8 // of each used row
+}
+
+// field is what a snapshot remembers of a column.
+type field struct {
+	Name   string
+	Kind   Kind
+	Size   int
+	Levels []string
+}
+
+// newIntake checks t and encodes its usable rows.
+func newIntake(t *Table, folds int) (*intake, error) {
+	if err := t.check(); err != nil {
+		return nil, err
+	}
+	in := &intake{reason: make([]Reason, t.Rows())}
+	class := in.pickClasses(t)
+	for i, l := range t.Labels {
+		switch {
+		case l < 0:
+			in.reason[i] = NoLabel
+		case class[l] < 0:
+			in.reason[i] = NewClass
+		case !finite(t, i):
+			in.reason[i] = NotFinite
+		default:
+			in.rows = append(in.rows, int32(i))
+		}
+	}
+	if len(in.rows) < MinRows {
+		return nil, fmt.Errorf("%w: %d usable rows, %d are needed", ErrTooFew, len(in.rows), MinRows)
+	}
+	if len(in.classes) < 2 {
+		return nil, fmt.Errorf("%w: %d classes have at least %d rows each", ErrOneClass, len(in.classes), MinClassRows)
+	}
+	in.encode(t)
+	in.data.Labels = make([]int32, len(in.rows))
+	in.counts = make([]int, len(in.classes))
+	in.fold = make([]uint8, len(in.rows))
+	for i, r := range in.rows {
+		c := class[t.Labels[r]]
+		in.data.Labels[i] = c
+		in.counts[c]++
+		in.fold[i] = uint8(t.Keys[r] % uint64(folds))
+	}
+	in.pickSources(t)
+	return in, nil
+}
+
+// pickClasses lists the classes with enough rows by name and maps table codes to them, −1 for the others.
+func (in *intake) pickClasses(t *Table) []int32 {
+	n := make([]int, len(t.Classes))
+	for i, l := range t.Labels {
+		if l >= 0 && finite(t, i) {
+			n[l]++
+		}
+	}
+	order := sortedNames(t.Classes, func(c int) bool { return n[c] >= MinClassRows })
+	to := slices.Repeat([]int32{-1}, len(t.Classes))
+	for i, c := range order {
+		to[c] = int32(i)
+		in.classes = append(in.classes, t.Classes[c])
+	}
+	in.data = &learn.Data{Classes: len(order)}
+	return to
+}
+
+// pickSources lists the sources met in the used rows by name.
+func (in *intake) pickSources(t *Table) {
+	if t.Sources == nil {
+		return
+	}
+	n := make([]int, len(t.SourceNames))
+	for _, r := range in.rows {
+		if s := t.Sources[r]; s >= 0 {
+			n[s]++
+		}
+	}
+	to := slices.Repeat([]int32{-1}, len(t.SourceNames))
+	for i, c := range sortedNames(t.SourceNames, func(c int) bool { return n[c] > 0 }) {
+		to[c] = int32(i)
+		in.sources = append(in.sources, t.SourceNames[c])
+	}
+	if len(in.sources) == 0 {
+		return
+	}
+	in.data.Sources = len(in.sources)
+	in.data.Source = make([]int32, len(in.rows))
+	for i, r := range in.rows {
+		in.data.Source[i] = -1
+		if s := t.Sources[r]; s >= 0 {
+			in.data.Source[i] = to[s]
+		}
+	}
+}
+
+// sortedNames gives the indexes of the names that are wanted, ordered by name.
+func sortedNames(names []string, want func(int) bool) []int {
+	var order []int
+	for c := range names {
+		if want(c) {
+			order = append(order, c)
+		}
+	}
+	slices.SortFunc(order, func(a, b int) int { return cmp.Compare(names[a], names[b]) })
+	return order
+}
+
+// finite tells whether no number of row i is infinite. Missing values (NaN) are allowed.
+func finite(t *Table, i int) bool {
+	for k := range t.Columns {
+		c := &t.Columns[k]
+		if c.Kind == Category {
+			continue
+		}
+		for _, v := range c.Values[i*c.Size : (i+1)*c.Size] {
+			if math.IsInf(v, 0) {
+				return false
+			}
+		}
+	}
+	return true
+}
+
+// encode fits the encoder on the used rows and encodes them.
+func (in *intake) encode(t *Table) {
+	cols := make([]encode.Input, len(t.Columns))
+	for k := range t.Columns {
+		c := &t.Columns[k]
+		in.fields = append(in.fields, field{Name: c.Name, Kind: c.Kind, Size: c.Size, Levels: slices.Clone(c.Levels)})
+		cols[k] = gather(c, in.rows)
+	}
+	n := len(in.rows)
+	in.encoder = encode.Fit(cols, n)
+	d, b := in.encoder.Dense, in.encoder.Bins
+	bins := &forest.Bins{N: n, D: b, Rows: make([]uint8, n*b), Cols: make([][]uint8, b)}
+	x := make([]float32, n*d)
+	for i := range n {
+		in.encoder.Row(cols, i, 1, x[i*d:(i+1)*d], bins.Rows[i*b:(i+1)*b])
+	}
+	for j := range bins.Cols {
+		col := make([]uint8, n)
+		for i := range col {
+			col[i] = bins.Rows[i*b+j]
+		}
+		bins.Cols[j] = col
+	}
+	in.data.Dense, in.data.X, in.data.Bins = d, x, bins
+}
+
+// gather copies the used rows of a column.
+func gather(c *Column, rows []int32) encode.Input {
+	if c.Kind == Category {
+		out := encode.Input{Codes: make([]int32, len(rows)), Levels: len(c.Levels)}
+		for i, r := range rows {
+			out.Codes[i] = c.Codes[r]
+		}
+		return out
+	}
+	out := encode.Input{Size: c.Size, Values: make([]float64, 0, len(rows)*c.Size)}
+	for _, r := range rows {
+		out.Values = append(out.Values, c.Values[int(r)*c.Size:int(r+1)*c.Size]...)
+	}
+	return out
+}

@@ -1,0 +1,46 @@
+package noise
+
+import "slices"
+
+// quickSteps bound the EM of a quick fit.
+const quickSteps = 25
+
+// Quick fits only the plain models, without slopes and boundary flips, and keeps the one with the highest evidence: the
+// judge between settings, and the means of cleaning labels before a second fit. It returns the evidence.
+func Quick(d *Data) (*Layer, float64) {
+	k := d.Classes
+	first := run(d, start(d), "none", shape{flips: none}, quickSteps)
+	p := first.p.clone()
+	p.Flip = uniform(k, 0.1)
+	one := run(d, p, "single", shape{flips: single}, quickSteps)
+	all := []*candidate{first, one, run(d, one.p.clone(), "free", shape{flips: free}, quickSteps)}
+	if d.Source != nil && d.Sources > 1 {
+		for _, base := range all[1:3] {
+			p := base.p.clone()
+			p.Rho = slices.Repeat([]float64{1}, d.Sources)
+			all = append(all, run(d, p, base.name+"+source", shape{flips: base.shape.flips, source: true}, quickSteps))
+		}
+	}
+	best := all[0]
+	for _, c := range all[1:] {
+		if !c.refused && c.evidence > best.evidence {
+			best = c
+		}
+	}
+	return &Layer{Classes: k, Models: []Model{{Name: best.name, Weight: 1, P: *best.p}}}, best.evidence
+}
+
+// Clean gives each row its most probable true class and that class's probability.
+func (l *Layer) Clean(d *Data, label []int32, weight []float64) {
+	j := l.NewJudge()
+	for i := range d.Rows() {
+		j.mix(d.Members, i, int(d.Observed[i]), d.source(i))
+		best := 0
+		for c, v := range j.post {
+			if v > j.post[best] {
+				best = c
+			}
+		}
+		label[i], weight[i] = int32(best), j.post[best]
+	}
+}
