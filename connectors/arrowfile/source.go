@@ -1,0 +1,276 @@
+package arrowfile
+
+import (
+	"context"
+	"errors"
+	"fmt"
+	"sync/atomic"
+
+	"github.com/apache/arrow/go/v16/arrow"
+
+	"labelweir/filter"
+	"labelweir/model"
+)
+
+// Source reads an Arrow IPC file or stream. It implements filter.Source and belongs to one goroutine.
+type Source struct {
+	in     *input
+	opt    Options
+	rec    filter.Record
+	plan   plan
+	names  []string
+	choice []Choice
+
+	labels, sources *coder
+	levels          []*coder // one a feature, nil unless Category
+
+	cur    arrow.Record // record batch being cut
+	at     int64        // rows of it handed out
+	row    int64        // rows handed out in all
+	err    error        // sticky
+	closed bool
+}
+
+// Open opens an Arrow IPC file or stream. The record's label must name a column; its fields are inferred when it has
+// none. Errors wrap ErrUnreadable or ErrColumn.
+func Open(path string, rec filter.Record, opt Options) (src *Source, err error) {
+	opt = opt.filled()
+	in, err := openInput(path, opt)
+	if err != nil {
+		return nil, err
+	}
+	defer func() {
+		if err != nil {
+			in.close()
+		}
+	}()
+	schema := in.rd.Schema()
+	names := uniqueNames(schema)
+	p := &planner{path: path, schema: schema, names: names}
+	pl, err := p.parts(rec)
+	if err != nil {
+		return nil, err
+	}
+	choice, err := choose(p, rec, pl, opt)
+	if err != nil {
+		return nil, err
+	}
+	if len(rec.Fields) == 0 {
+		rec = explicit(rec, choice, schema)
+	}
+	if err := p.features(rec, &pl); err != nil {
+		return nil, err
+	}
+	if len(pl.features) == 0 {
+		return nil, &Error{Path: path, What: fmt.Sprintf("none of its %d columns can be a field", len(names)),
+			Do: "name the fields, or add columns of numbers, text or vectors", Kind: ErrColumn}
+	}
+	src = &Source{in: in, opt: opt, rec: rec, plan: pl, names: names, choice: choice,
+		labels: newCoder(), sources: newCoder(), levels: make([]*coder, len(pl.features))}
+	src.rec.Fields = nil
+	for i, f := range pl.features {
+		if f.Kind == model.Category {
+			src.levels[i] = newCoder()
+		}
+		src.rec.Fields = append(src.rec.Fields, f.Field)
+	}
+	return src, nil
+}
+
+// choose infers the fields, or says for each column whether the record names it.
+func choose(p *planner, rec filter.Record, pl plan, opt Options) ([]Choice, error) {
+	parts := map[int]string{}
+	for _, x := range []struct {
+		index int
+		name  string
+	}{{pl.time, "the time"}, {pl.source, "the source"}, {pl.label, "the label"}} {
+		if x.index >= 0 {
+			parts[x.index] = x.name
+		}
+	}
+	if len(rec.Fields) == 0 {
+		habits, err := peek(p.path, opt)
+		if err != nil {
+			return nil, err
+		}
+		return infer(p.names, p.schema, parts, habits), nil
+	}
+	if err := p.features(rec, &pl); err != nil {
+		return nil, err
+	}
+	out := make([]Choice, len(p.names))
+	for i, f := range p.schema.Fields() {
+		out[i] = Choice{Column: p.names[i], Type: f.Type.String(), Why: "not among the fields"}
+		if part, ok := parts[i]; ok {
+			out[i].Why = part
+		}
+	}
+	for _, f := range pl.features {
+		out[f.index].Used, out[f.index].Kind, out[f.index].Why = true, f.Kind, "named"
+	}
+	return out, nil
+}
+
+// Choice tells, column by column, what is used as what and why.
+func (s *Source) Choice() []Choice { return append([]Choice(nil), s.choice...) }
+
+// Record is the record as read, with its fields written out: opening the same or a like file with it reads the same
+// columns.
+func (s *Source) Record() filter.Record {
+	rec := s.rec
+	rec.Fields = append([]filter.Field(nil), rec.Fields...)
+	return rec
+}
+
+// Path is the file's path as it was given.
+func (s *Source) Path() string { return s.in.path }
+
+// Format is the file's format.
+func (s *Source) Format() Format { return s.in.msgs.format }
+
+// Progress tells how many bytes of how many have been read.
+func (s *Source) Progress() (done, size int64) { return s.in.msgs.seen, s.in.msgs.size }
+
+// Next implements filter.Source.
+func (s *Source) Next(ctx context.Context) (*filter.Batch, error) {
+	if s.closed {
+		return nil, &Error{Path: s.in.path, What: "read after Close", Kind: ErrClosed}
+	}
+	if err := ctx.Err(); err != nil {
+		return nil, err
+	}
+	if s.err != nil {
+		return nil, s.err
+	}
+	b, err := s.next()
+	if err != nil {
+		s.err = err
+		s.drop()
+		return nil, err
+	}
+	return b, nil
+}
+
+func (s *Source) next() (*filter.Batch, error) {
+	for s.cur == nil || s.at == s.cur.NumRows() {
+		s.drop()
+		rec, err := s.in.next()
+		if err != nil {
+			return nil, err // io.EOF too
+		}
+		s.cur, s.at = rec, 0
+	}
+	part := s.cur.NewSlice(s.at, min(s.at+int64(s.opt.Rows), s.cur.NumRows()))
+	b, err := s.batch(part)
+	if err != nil {
+		part.Release()
+		return nil, err
+	}
+	s.at += part.NumRows()
+	s.row += part.NumRows()
+	return b, nil
+}
+
+// batch reads the table out of a slice of a record batch and passes the slice on as its payload.
+func (s *Source) batch(part arrow.Record) (b *filter.Batch, err error) {
+	defer func() {
+		if p := recover(); p != nil {
+			b, err = nil, s.in.damaged("its values can't be read", caught(p))
+		}
+	}()
+	n := int(part.NumRows())
+	t := &model.Table{Keys: make([]uint64, n), Columns: make([]model.Column, len(s.plan.features))}
+	for i := range t.Keys {
+		t.Keys[i] = model.Key(s.row + int64(i))
+	}
+	if t.Labels, err = s.codes(s.labels, part, s.plan.label); err != nil {
+		return nil, err
+	}
+	t.Classes = s.labels.list()
+	if s.plan.source >= 0 {
+		if t.Sources, err = s.codes(s.sources, part, s.plan.source); err != nil {
+			return nil, err
+		}
+		t.SourceNames = s.sources.list()
+	}
+	for i := range s.plan.features {
+		if t.Columns[i], err = s.column(i, part); err != nil {
+			return nil, err
+		}
+	}
+	b = &filter.Batch{First: s.row, Table: t, Payload: part}
+	if s.plan.time >= 0 {
+		if b.Times, err = appendTimes(make([]int64, 0, n), part.Column(s.plan.time)); err != nil {
+			return nil, s.valueError(s.plan.time, 0, err)
+		}
+	}
+	var given atomic.Bool
+	b.Release = func() {
+		if given.CompareAndSwap(false, true) {
+			part.Release()
+		}
+	}
+	return b, nil
+}
+
+// column reads one feature.
+func (s *Source) column(i int, part arrow.Record) (model.Column, error) {
+	f := s.plan.features[i]
+	col := model.Column{Name: f.Path, Kind: f.Kind, Size: f.Size}
+	var err error
+	switch arr := part.Column(f.index); f.Kind {
+	case model.Number:
+		col.Values, err = appendNumbers(make([]float64, 0, arr.Len()), arr)
+	case model.Vector:
+		col.Values, err = appendVectors(make([]float64, 0, arr.Len()*f.Size), arr)
+	case model.Category:
+		if col.Codes, err = s.codes(s.levels[i], part, f.index); err != nil {
+			return col, err
+		}
+		col.Levels = s.levels[i].list()
+	}
+	if err != nil {
+		return col, s.valueError(f.index, 0, err)
+	}
+	return col, nil
+}
+
+// codes reads a column of names.
+func (s *Source) codes(c *coder, part arrow.Record, index int) ([]int32, error) {
+	codes, bad, err := c.append(make([]int32, 0, part.NumRows()), part.Column(index))
+	if err != nil {
+		return nil, s.valueError(index, bad, err)
+	}
+	return codes, nil
+}
+
+// valueError says that the value in row i of the current slice means nothing as what the column is used for.
+func (s *Source) valueError(index, i int, err error) error {
+	e := &Error{Path: s.in.path, Batch: s.in.msgs.batch, Row: s.row + int64(i) + 1, Column: s.names[index], Kind: ErrUnreadable}
+	if f := fractional(0); errors.As(err, &f) {
+		e.What, e.Do = f.Error(), "convert the column to text, integers or a dictionary, or cut it into ranges"
+		return e
+	}
+	e.What, e.Err = "the value can't be read", err
+	return e
+}
+
+// drop gives the current record batch back.
+func (s *Source) drop() {
+	if s.cur != nil {
+		s.cur.Release()
+		s.cur = nil
+	}
+}
+
+// Close implements filter.Source. Calls after the first do nothing.
+func (s *Source) Close() error {
+	if s.closed {
+		return nil
+	}
+	s.closed = true
+	s.drop()
+	return s.in.close()
+}
+
+var _ filter.Source = (*Source)(nil)

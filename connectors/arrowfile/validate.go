@@ -1,0 +1,176 @@
+package arrowfile
+
+import (
+	"errors"
+	"fmt"
+
+	"github.com/apache/arrow/go/v16/arrow"
+	"github.com/apache/arrow/go/v16/arrow/bitutil"
+)
+
+// validate looks at every column of a record batch for what arrow's reader takes on trust: bitmaps and offsets that
+// fit their buffers, indices that fit their dictionary. Cost O(rows) for text, lists and dictionaries, O(1) otherwise.
+func (in *input) validate(rec arrow.Record) error {
+	in.lastDicts, in.dicts = in.dicts, map[arrow.ArrayData]bool{}
+	for i, col := range rec.Columns() {
+		if err := in.validateData(col.Data()); err != nil {
+			e := in.damaged("its values can't be read", err).(*Error)
+			e.Column = rec.ColumnName(i)
+			return e
+		}
+	}
+	return nil
+}
+
+func (in *input) validateData(d arrow.ArrayData) error {
+	n := d.Len()
+	if n < 0 || d.NullN() > n {
+		return fmt.Errorf("%d nulls in %d rows", d.NullN(), n)
+	}
+	bufs := d.Buffers()
+	if len(bufs) > 0 && bufs[0] != nil && bufs[0].Len()*8 < d.Offset()+n {
+		return fmt.Errorf("null bitmap of %d bytes for %d rows", bufs[0].Len(), n)
+	}
+	dt := d.DataType()
+	if ext, ok := dt.(arrow.ExtensionType); ok {
+		dt = ext.StorageType()
+	}
+	if err := in.validateType(dt, d); err != nil {
+		return err
+	}
+	for _, c := range d.Children() {
+		if err := in.validateData(c); err != nil {
+			return err
+		}
+	}
+	return nil
+}
+
+func (in *input) validateType(dt arrow.DataType, d arrow.ArrayData) error {
+	switch dt := dt.(type) {
+	case *arrow.DictionaryType:
+		return in.validateDictionary(dt, d)
+	case *arrow.BooleanType:
+		return wide(d, 1)
+	case *arrow.StringType, *arrow.BinaryType:
+		return offsetsFit[int32](d, bufLen(d, 2))
+	case *arrow.LargeStringType, *arrow.LargeBinaryType:
+		return offsetsFit[int64](d, bufLen(d, 2))
+	case *arrow.ListType, *arrow.MapType:
+		return offsetsFit[int32](d, d.Children()[0].Len())
+	case *arrow.LargeListType:
+		return offsetsFit[int64](d, d.Children()[0].Len())
+	case *arrow.FixedSizeListType:
+		if c := d.Children()[0]; c.Len() < (d.Offset()+d.Len())*int(dt.Len()) {
+			return fmt.Errorf("%d elements for %d lists of %d", c.Len(), d.Len(), dt.Len())
+		}
+	case *arrow.StructType:
+		for i, c := range d.Children() {
+			if c.Len() < d.Offset()+d.Len() {
+				return fmt.Errorf("field %q has %d values for %d rows", dt.Field(i).Name, c.Len(), d.Len())
+			}
+		}
+	case arrow.BinaryViewDataType:
+		return viewsFit(d)
+	case arrow.FixedWidthDataType:
+		return wide(d, dt.BitWidth())
+	}
+	return nil
+}
+
+func bufLen(d arrow.ArrayData, i int) int {
+	if bufs := d.Buffers(); i < len(bufs) && bufs[i] != nil {
+		return bufs[i].Len()
+	}
+	return 0
+}
+
+// wide tells whether the values of a type of so many bits have room in their buffer.
+func wide(d arrow.ArrayData, bits int) error {
+	if have := bufLen(d, 1); d.Len() > 0 && have*8 < (d.Offset()+d.Len())*bits {
+		return fmt.Errorf("%d bytes for %d values of %d bits", have, d.Len(), bits)
+	}
+	return nil
+}
+
+// offsetsFit tells whether the offsets never fall and stay within limit.
+func offsetsFit[T int32 | int64](d arrow.ArrayData, limit int) error {
+	if d.Len() == 0 {
+		return nil
+	}
+	have := arrow.GetData[T](d.Buffers()[1].Bytes())
+	if len(have) < d.Offset()+d.Len()+1 {
+		return fmt.Errorf("%d offsets for %d values", len(have), d.Len())
+	}
+	have = have[d.Offset() : d.Offset()+d.Len()+1]
+	last := T(0)
+	for i, o := range have {
+		if o < last || int64(o) > int64(limit) {
+			return fmt.Errorf("offset %d is %d after %d, of %d", i, o, last, limit)
+		}
+		last = o
+	}
+	return nil
+}
+
+// viewsFit tells whether every view points into one of its buffers.
+func viewsFit(d arrow.ArrayData) error {
+	if err := wide(d, arrow.ViewHeaderSizeBytes*8); err != nil || d.Len() == 0 {
+		return err
+	}
+	views := arrow.ViewHeaderTraits.CastFromBytes(d.Buffers()[1].Bytes())
+	for i, v := range views[d.Offset() : d.Offset()+d.Len()] {
+		if v.Len() < 0 {
+			return fmt.Errorf("view %d has length %d", i, v.Len())
+		}
+		if v.IsInline() {
+			continue
+		}
+		b := int(v.BufferIndex()) + 2
+		if v.BufferIndex() < 0 || b >= len(d.Buffers()) || v.BufferOffset() < 0 || int(v.BufferOffset())+v.Len() > bufLen(d, b) {
+			return fmt.Errorf("view %d points outside its buffers", i)
+		}
+	}
+	return nil
+}
+
+// validateDictionary checks the indices of valid rows, and the dictionary itself the first time it is met.
+func (in *input) validateDictionary(dt *arrow.DictionaryType, d arrow.ArrayData) error {
+	dict := d.Dictionary()
+	if dict == nil {
+		return errors.New("dictionary column without a dictionary")
+	}
+	if !in.dicts[dict] && !in.lastDicts[dict] {
+		if err := in.validateData(dict); err != nil {
+			return fmt.Errorf("dictionary: %w", err)
+		}
+	}
+	in.dicts[dict] = true
+	index := dt.IndexType.(arrow.FixedWidthDataType)
+	if err := wide(d, index.BitWidth()); err != nil || d.Len() == 0 {
+		return err
+	}
+	switch index.BitWidth() {
+	case 8:
+		return indicesFit[uint8](d, dict.Len())
+	case 16:
+		return indicesFit[uint16](d, dict.Len())
+	case 32:
+		return indicesFit[uint32](d, dict.Len())
+	}
+	return indicesFit[uint64](d, dict.Len())
+}
+
+// indicesFit tells whether all valid rows have an index below limit. Negative ones are huge when read unsigned.
+func indicesFit[T uint8 | uint16 | uint32 | uint64](d arrow.ArrayData, limit int) error {
+	var valid []byte
+	if d.NullN() != 0 && d.Buffers()[0] != nil {
+		valid = d.Buffers()[0].Bytes()
+	}
+	for i, k := range arrow.GetData[T](d.Buffers()[1].Bytes())[d.Offset() : d.Offset()+d.Len()] {
+		if uint64(k) >= uint64(limit) && (valid == nil || bitutil.BitIsSet(valid, d.Offset()+i)) {
+			return fmt.Errorf("index %d of a dictionary of %d", k, limit)
+		}
+	}
+	return nil
+}
