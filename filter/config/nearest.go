@@ -1,11 +1,11 @@
 package config
 
 // Nearest gives the name of known that word was most likely meant to be: the one the fewest letters away, the first of
-// them when there are several. It is empty when none is close: more than a third of the word's letters would change.
+// them when there are several. It is empty when more than a third of the word's letters would have to change.
 func Nearest(word string, known []string) string {
-	best, least := "", len(word)/3+1
+	best, least := "", max(1, len(word)/3)+1
 	for _, name := range known {
-		if d := lettersBetween(word, name); d < least || (d == least && best == "") {
+		if d := lettersBetween(word, name); d < least {
 			best, least = name, d
 		}
 	}
