@@ -120,7 +120,7 @@ func (s *Scratch) discrete(l *lattice, q float64) State {
 	for i, m := range s.margin {
 		s.keep[i] = m > q
 	}
-	return s.state(q, j, Limit)
+	return s.state(q, j, s.collapsed(), Limit)
 }
 
 // polish takes the flags of the best point of the lattice, solves for continuous weights with them held, from whatever
@@ -134,12 +134,10 @@ func (s *Scratch) polish(l *lattice, q float64, rng *rand.Rand) State {
 	s.renew(q)
 	s.measure(q)
 	s.ascend(held*s.hold, tolerance, rng)
-	if j := s.measure(q); j < s.best.j {
-		s.remember(j)
-	}
-	j, status := s.cycle(Stage{Q: q, Tolerance: tolerance}, rounds*s.hold, rng)
-	if j >= start {
+	s.consider(s.measure(q))
+	status := s.cycle(Stage{Q: q, Tolerance: tolerance}, rounds*s.hold, rng)
+	if s.best.j >= start {
 		status = NoProgress
 	}
-	return s.state(q, j, status)
+	return s.end(q, status)
 }

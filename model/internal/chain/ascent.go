@@ -56,11 +56,21 @@ func (s *Scratch) add(i int, t float64) {
 // measure brings all margins up to date with w and returns J_q(w).
 func (s *Scratch) measure(q float64) float64 {
 	var sum float64
+	var kept, all [2]float64
 	for i := range s.margin {
 		m := s.y[i] * s.dot(i)
 		s.margin[i] = m
-		sum += s.omega[i] * loss.Value(q, m)
+		o, class := s.omega[i], 0
+		if s.y[i] > 0 {
+			class = 1
+		}
+		sum += o * loss.Value(q, m)
+		all[class] += o
+		if loss.Keep(q, m) {
+			kept[class] += o
+		}
 	}
+	s.kept = [2]float64{kept[0] / all[0], kept[1] / all[1]}
 	return sum + s.lambda*squares(s.w)
 }
 

@@ -5,28 +5,26 @@ import (
 	"math/rand/v2"
 )
 
-// descend alternates renewals of the flags with epochs at one q and ends at the point of the lowest J it met, its own
-// start included; J along a path whose q rises therefore never rises. It returns that J.
-func (s *Scratch) descend(st Stage, rng *rand.Rand) (j float64, status Status) {
+// descend alternates renewals of the flags with epochs at one q and goes back to the best point it met, its own start
+// included; J along a path whose q rises therefore never rises.
+func (s *Scratch) descend(st Stage, rng *rand.Rand) (status Status) {
 	s.remember(s.measure(st.Q))
 	return s.cycle(st, st.Rounds*s.hold, rng)
 }
 
 // cycle is descend, for so many epochs, from a point already measured and with a best point already remembered.
-func (s *Scratch) cycle(st Stage, epochs int, rng *rand.Rand) (j float64, status Status) {
+func (s *Scratch) cycle(st Stage, epochs int, rng *rand.Rand) (status Status) {
 	for e := 0; e < epochs && status != Converged; {
 		changed := s.renew(st.Q)
 		worst, used := s.ascend(min(s.hold, epochs-e), st.Tolerance, rng)
 		e += used
-		if j := s.measure(st.Q); j < s.best.j {
-			s.remember(j)
-		}
+		s.consider(s.measure(st.Q))
 		if changed == 0 && worst <= st.Tolerance && s.steady(st.Q) {
 			status = Converged
 		}
 	}
 	s.recall()
-	return s.best.j, status
+	return status
 }
 
 // ascend makes up to n epochs with the flags held, fewer when no projected gradient is above tol any more.
@@ -67,10 +65,7 @@ func Descend(p *Problem, q float64, rng *rand.Rand, s *Scratch) State {
 			break
 		}
 		s.ascend(epochs, tolerance, rng)
-		if j := s.measure(q); j < s.best.j {
-			s.remember(j)
-		}
+		s.consider(s.measure(q))
 	}
-	s.recall()
-	return s.state(q, s.best.j, status)
+	return s.end(q, status)
 }

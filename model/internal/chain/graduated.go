@@ -55,10 +55,10 @@ func Graduated(p *Problem, path []Stage, want []float64, rng *rand.Rand, s *Scra
 	out := make([]State, len(want))
 	done := 0
 	for _, st := range path {
-		j, status := s.descend(st, rng)
+		status := s.descend(st, rng)
 		for k, q := range want {
 			if q == st.Q {
-				out[k] = s.state(q, j, status)
+				out[k] = s.end(q, status)
 				done++
 			}
 		}

@@ -29,14 +29,17 @@ type Scratch struct {
 	hold   int // epochs between renewals of the flags
 	epochs int // since load
 
-	best mark // lowest J met at the present q
+	kept [2]float64 // share of the weight of class −1 and +1 above q, as of the last measure
+	best mark       // best point met at the present q
 
 	lattice lattice // of annealed runs
 }
 
 // mark is a point of a run that it can return to.
 type mark struct {
-	j     float64
+	j         float64
+	collapsed bool
+
 	w     []float64
 	alpha []float64
 	keep  []bool
@@ -88,21 +91,6 @@ func (s *Scratch) holdFor() int {
 	return min(most, least+int(2*load/float64(max(1, s.n))))
 }
 
-// remember makes the present point, whose objective is j, the best one.
-func (s *Scratch) remember(j float64) {
-	s.best.j = j
-	copy(s.best.w, s.w)
-	copy(s.best.alpha, s.alpha)
-	copy(s.best.keep, s.keep)
-}
-
-// recall goes back to the best point.
-func (s *Scratch) recall() {
-	copy(s.w, s.best.w)
-	copy(s.alpha, s.best.alpha)
-	copy(s.keep, s.best.keep)
-}
-
 // pack copies entry k of the problem to packed row i.
 func (s *Scratch) pack(p *Problem, i, k int) {
 	r := int(p.Rows[k])
@@ -131,9 +119,9 @@ func (s *Scratch) reset() {
 }
 
 // state copies the run's state out, in the order of the problem's rows.
-func (s *Scratch) state(q, j float64, status Status) State {
+func (s *Scratch) state(q, j float64, collapsed bool, status Status) State {
 	st := State{W: make([]float64, len(s.w)), Alpha: make([]float64, s.n), Keep: make([]bool, s.n),
-		Q: q, J: j, Status: status, Epochs: s.epochs}
+		Q: q, J: j, Collapsed: collapsed, Status: status, Epochs: s.epochs}
 	copy(st.W, s.w)
 	for i, k := range s.perm {
 		st.Alpha[k], st.Keep[k] = s.alpha[i], s.keep[i]

@@ -27,6 +27,11 @@ type State struct {
 	Q      float64
 	J      float64
 	Status Status
+
+	// Collapsed says that the run dropped nearly all of one class: at this q the objective prefers that to telling the
+	// classes apart. Runs avoid such points even at a lower J and end at one only if they met no other.
+	Collapsed bool
+
 	Epochs int // passes over the kept rows up to here
 }
 

@@ -30,6 +30,7 @@ func Carry(p *Problem, q float64, from *State, index []int32, changed []bool, s 
 	s.load(p, nil)
 	s.restore(&st)
 	st.J = s.measure(q)
+	st.Collapsed = s.collapsed()
 	st.W = append([]float64(nil), s.w...)
 	for i, k := range s.perm {
 		if !known(int(k)) {
@@ -52,12 +53,10 @@ func Warm(p *Problem, q float64, from *State, epochs int, rng *rand.Rand, s *Scr
 	start := s.measure(q)
 	s.remember(start)
 	_, used := s.ascend(heldEpochs, tolerance, rng)
-	if j := s.measure(q); j < s.best.j {
-		s.remember(j)
-	}
-	j, status := s.cycle(Stage{Q: q, Tolerance: tolerance}, max(1, epochs-used), rng)
-	if j >= start {
+	s.consider(s.measure(q))
+	status := s.cycle(Stage{Q: q, Tolerance: tolerance}, max(1, epochs-used), rng)
+	if s.best.j >= start {
 		status = NoProgress
 	}
-	return s.state(q, j, status)
+	return s.end(q, status)
 }
