@@ -1,0 +1,125 @@
+package arrowfile
+
+import (
+	"math"
+
+	"github.com/apache/arrow/go/v16/arrow"
+	"github.com/apache/arrow/go/v16/arrow/array"
+	"github.com/apache/arrow/go/v16/arrow/memory"
+
+	"labelweir/filter"
+	"labelweir/model"
+)
+
+// tagNames are the columns appended to every record, in this order. Their types:
+//
+//	weir_score     float64, null when unscored
+//	weir_verdict   dictionary<int8, utf8> of pass, suspect, quarantine, unscored
+//	weir_implied   utf8, null when unscored
+//	weir_margin    float64, null when unscored
+//	weir_reason    dictionary<int8, utf8> of the reasons, null when scored
+//	weir_snapshot  utf8, null when there was no snapshot
+//
+// Scores are float64 so that a score compares with a threshold as the verdict did. Only lists that are known from the
+// start are dictionaries, for those of an Arrow file can't grow.
+func tagNames() []string {
+	return []string{"weir_score", "weir_verdict", "weir_implied", "weir_margin", "weir_reason", "weir_snapshot"}
+}
+
+// isTag tells whether a column name is one of tagNames.
+func isTag(name string) bool { return indexOf(tagNames(), name) >= 0 }
+
+func tagFields() []arrow.Field {
+	dict := &arrow.DictionaryType{IndexType: arrow.PrimitiveTypes.Int8, ValueType: arrow.BinaryTypes.String}
+	types := []arrow.DataType{arrow.PrimitiveTypes.Float64, dict, arrow.BinaryTypes.String, arrow.PrimitiveTypes.Float64, dict, arrow.BinaryTypes.String}
+	fields := make([]arrow.Field, len(types))
+	for i, name := range tagNames() {
+		fields[i] = arrow.Field{Name: name, Type: types[i], Nullable: name != "weir_verdict"}
+	}
+	return fields
+}
+
+// tagColumns collects tags and makes columns of them.
+type tagColumns struct {
+	score, margin     *array.Float64Builder
+	verdict, reason   *array.Int8Builder
+	implied, snapshot *array.StringBuilder
+
+	verdicts, reasons arrow.Array // the dictionaries
+}
+
+func newTagColumns(mem memory.Allocator) *tagColumns {
+	t := &tagColumns{
+		score: array.NewFloat64Builder(mem), margin: array.NewFloat64Builder(mem),
+		verdict: array.NewInt8Builder(mem), reason: array.NewInt8Builder(mem),
+		implied: array.NewStringBuilder(mem), snapshot: array.NewStringBuilder(mem),
+	}
+	var names []string
+	for v := filter.Pass; v <= filter.Unscored; v++ {
+		names = append(names, v.String())
+	}
+	t.verdicts = texts(mem, names)
+	names = nil
+	for r := model.NoLabel; r <= model.InputsChanged; r++ {
+		names = append(names, r.String())
+	}
+	t.reasons = texts(mem, names)
+	return t
+}
+
+func texts(mem memory.Allocator, names []string) arrow.Array {
+	b := array.NewStringBuilder(mem)
+	defer b.Release()
+	b.AppendValues(names, nil)
+	return b.NewArray()
+}
+
+// add appends one row.
+func (t *tagColumns) add(tag *filter.Tag) {
+	number(t.score, tag.Score)
+	number(t.margin, tag.Margin)
+	t.verdict.Append(int8(tag.Verdict))
+	text(t.implied, tag.Implied, tag.Verdict != filter.Unscored)
+	text(t.snapshot, tag.Snapshot, tag.Snapshot != "")
+	if tag.Reason == model.Scored {
+		t.reason.AppendNull()
+	} else {
+		t.reason.Append(int8(tag.Reason - model.NoLabel))
+	}
+}
+
+func number(b *array.Float64Builder, v float64) {
+	if math.IsNaN(v) {
+		b.AppendNull()
+	} else {
+		b.Append(v)
+	}
+}
+
+func text(b *array.StringBuilder, s string, valid bool) {
+	if valid {
+		b.Append(s)
+	} else {
+		b.AppendNull()
+	}
+}
+
+// take gives the columns of the rows added since the last take; the caller releases them.
+func (t *tagColumns) take() []arrow.Array {
+	return []arrow.Array{
+		t.score.NewArray(), indexed(t.verdict, t.verdicts), t.implied.NewArray(),
+		t.margin.NewArray(), indexed(t.reason, t.reasons), t.snapshot.NewArray(),
+	}
+}
+
+func indexed(b *array.Int8Builder, dict arrow.Array) arrow.Array {
+	codes := b.NewArray()
+	defer codes.Release()
+	return array.NewDictionaryArray(&arrow.DictionaryType{IndexType: arrow.PrimitiveTypes.Int8, ValueType: arrow.BinaryTypes.String}, codes, dict)
+}
+
+func (t *tagColumns) release() {
+	for _, x := range []interface{ Release() }{t.score, t.margin, t.verdict, t.reason, t.implied, t.snapshot, t.verdicts, t.reasons} {
+		x.Release()
+	}
+}

@@ -1,0 +1,180 @@
+package arrowfile
+
+import (
+	"errors"
+	"fmt"
+	"io/fs"
+	"os"
+	"path/filepath"
+	"syscall"
+
+	"labelweir/connectors/arrowfile/internal/disk"
+)
+
+// OutputPaths are the files that a Sink writes.
+type OutputPaths struct {
+	Tagged     string // every record that is not held back
+	Quarantine string // records held back; empty: none may be
+}
+
+// target is a file to be: written under a temporary name beside the final one.
+type target struct {
+	disk    disk.FS
+	path    string // the final name
+	temp    string
+	file    disk.File
+	replace bool
+	existed bool
+	open    bool // file is open
+	placed  bool // the final name is taken
+}
+
+// newTarget checks path and creates the temporary file.
+func newTarget(d disk.FS, path string, replace bool) (*target, error) {
+	t := &target{disk: d, path: path, replace: replace}
+	if err := t.free(); err != nil {
+		return nil, err
+	}
+	dir := filepath.Dir(path)
+	info, err := d.Stat(dir)
+	switch {
+	case errors.Is(err, fs.ErrNotExist):
+		return nil, &Error{Path: path, What: fmt.Sprintf("its folder %s does not exist", dir), Do: "create the folder first", Kind: ErrTarget, Err: nil}
+	case err != nil:
+		return nil, t.fault("its folder can't be looked at", ErrTarget, err)
+	case !info.IsDir():
+		return nil, &Error{Path: path, What: fmt.Sprintf("%s is not a folder", dir), Do: "check the path", Kind: ErrTarget}
+	}
+	for n := 0; ; n++ {
+		t.temp = filepath.Join(dir, fmt.Sprintf(".%s.part-%d-%d", filepath.Base(path), os.Getpid(), n))
+		if t.file, err = d.Create(t.temp); err == nil {
+			t.open = true
+			return t, nil
+		}
+		if !errors.Is(err, fs.ErrExist) || n == 100 {
+			return nil, t.fault("can't be created", ErrTarget, err)
+		}
+	}
+}
+
+// free tells whether the final name may be taken.
+func (t *target) free() error {
+	info, err := t.disk.Stat(t.path)
+	switch {
+	case errors.Is(err, fs.ErrNotExist):
+		t.existed = false
+		return nil
+	case err != nil:
+		return t.fault("can't be looked at", ErrTarget, err)
+	case !info.Mode().IsRegular():
+		return &Error{Path: t.path, What: "exists and is not a regular file", Do: "name another output", Kind: ErrTarget}
+	case !t.replace:
+		return &Error{Path: t.path, What: "exists", Do: "name another output or allow it to be replaced", Kind: ErrTarget, Err: fs.ErrExist}
+	}
+	t.existed = true
+	return nil
+}
+
+// sync brings the bytes to the disk and closes the file.
+func (t *target) sync() error {
+	err := t.file.Sync()
+	t.open = false
+	if e := t.file.Close(); err == nil {
+		err = e
+	}
+	return err
+}
+
+// place gives the file its final name.
+func (t *target) place() error {
+	if err := t.free(); err != nil { // it may have come to be meanwhile
+		return err
+	}
+	if err := t.disk.Rename(t.temp, t.path); err != nil {
+		return t.fault("can't be given its name", ErrWrite, err)
+	}
+	t.placed = true
+	return nil
+}
+
+// drop removes what there is: the temporary file, or the final one when it replaced nothing.
+func (t *target) drop() error {
+	if t.open {
+		t.open = false
+		_ = t.file.Close() // what it holds goes anyway
+	}
+	name := t.temp
+	switch {
+	case t.placed && t.existed:
+		return nil // the file before it is gone, so the whole new one stays
+	case t.placed:
+		name = t.path
+	}
+	if err := t.disk.Remove(name); err != nil && !errors.Is(err, fs.ErrNotExist) {
+		return t.fault(fmt.Sprintf("the unfinished file %s can't be removed", name), ErrWrite, err)
+	}
+	return nil
+}
+
+// fault is an error about this target, with advice for the causes that can be told apart.
+func (t *target) fault(what string, kind, err error) error {
+	var own *Error
+	if errors.As(err, &own) {
+		return err
+	}
+	e := &Error{Path: t.path, What: what, Kind: kind, Err: bare(err)}
+	switch {
+	case errors.Is(err, syscall.ENOSPC):
+		e.Do = "the disk is full: make room or write elsewhere"
+	case errors.Is(err, syscall.EDQUOT):
+		e.Do = "the quota is used up: make room or write elsewhere"
+	case errors.Is(err, fs.ErrPermission):
+		e.Do = "check the permissions of its folder"
+	case errors.Is(err, syscall.EROFS):
+		e.Do = "the file system is read-only: write elsewhere"
+	}
+	return e
+}
+
+// bare takes the temporary name and the system call off an error.
+func bare(err error) error {
+	if pe := (*fs.PathError)(nil); errors.As(err, &pe) {
+		return pe.Err
+	}
+	if le := (*os.LinkError)(nil); errors.As(err, &le) {
+		return le.Err
+	}
+	return err
+}
+
+// distinct tells whether input and outputs are different files, links resolved.
+func distinct(d disk.FS, input string, out OutputPaths) error {
+	if out.Quarantine != "" && resolved(out.Tagged) == resolved(out.Quarantine) {
+		return &Error{Path: out.Quarantine, What: "is both the tagged output and the quarantine", Do: "name two files", Kind: ErrTarget}
+	}
+	in, err := d.Stat(input)
+	if err != nil {
+		return nil // the input is open; its name may be gone
+	}
+	for _, path := range []string{out.Tagged, out.Quarantine} {
+		if path == "" {
+			continue
+		}
+		if info, err := d.Stat(path); err == nil && os.SameFile(in, info) {
+			return &Error{Path: path, What: "is the input", Do: "name another output", Kind: ErrTarget}
+		}
+	}
+	return nil
+}
+
+// resolved is the absolute path with the links of its folder followed.
+func resolved(path string) string {
+	dir, err := filepath.EvalSymlinks(filepath.Dir(path))
+	if err != nil {
+		dir = filepath.Dir(path)
+	}
+	if abs, err := filepath.Abs(dir); err == nil {
+		dir = abs
+	}
+	return filepath.Join(dir, filepath.Base(path))
+}
