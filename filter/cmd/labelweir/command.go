@@ -23,6 +23,7 @@ type command struct {
 // commands lists them in the order in which help shows them.
 func commands() []command {
 	return []command{
+		sweepCommand(),
 		versionCommand(),
 		helpCommand(),
 	}

@@ -8,7 +8,10 @@ import (
 	"strings"
 	"syscall"
 
+	"labelweir/connectors/arrowfile"
+	"labelweir/filter"
 	"labelweir/filter/cmd/labelweir/internal/argv"
+	"labelweir/filter/config"
 )
 
 // The exit codes. Those from 64 on have the meaning that BSD's sysexits.h gives them.
@@ -47,6 +50,7 @@ func code(ctx context.Context, err error) int {
 	var f *failure
 	var a *argv.Error
 	var s stopped
+	var faults config.Faults
 	switch {
 	case err == nil:
 		return 0
@@ -59,8 +63,28 @@ func code(ctx context.Context, err error) int {
 		return f.code
 	case errors.As(err, &a):
 		return exitUsage
+	case errors.As(err, &faults):
+		return faultCode(faults)
+	case errors.Is(err, arrowfile.ErrUnreadable), errors.Is(err, arrowfile.ErrColumn), errors.Is(err, filter.ErrChanged):
+		return exitInput
+	case errors.Is(err, arrowfile.ErrTarget):
+		return exitCreate
+	case errors.Is(err, arrowfile.ErrWrite):
+		return exitWrite
+	case errors.Is(err, filter.ErrConfig), errors.Is(err, filter.ErrNoTime):
+		return exitConfig
 	}
 	return exitFailed
+}
+
+// faultCode tells a command line that was mistyped from settings that are wrong.
+func faultCode(faults config.Faults) int {
+	for _, f := range faults {
+		if f.Layer != config.FromFlag {
+			return exitConfig
+		}
+	}
+	return exitUsage
 }
 
 // say writes err for a person to read: one line a fault, each beginning with the program's name.

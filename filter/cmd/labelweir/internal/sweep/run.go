@@ -1,0 +1,135 @@
+package sweep
+
+import (
+	"context"
+	"encoding/json"
+	"errors"
+	"fmt"
+	"io"
+	"time"
+
+	"labelweir/connectors/arrowfile"
+	"labelweir/filter"
+	"labelweir/filter/config"
+)
+
+// Watch is who wants to hear of a sweep while it runs. Each part may be nil.
+type Watch struct {
+	Chosen   func([]arrowfile.Choice)              // once, when the columns are known
+	Progress func(phase string, done, total int64) // from one goroutine at a time
+	Now      func() time.Time                      // clock of the report's times; nil: time.Now
+}
+
+// Run sweeps the file of c, which [config.Loader.Sweep] has passed, and writes all files that c names. Either all of them
+// stand under their names afterwards, or, when the error is not nil, none but those committed before it: the tagged file
+// and the quarantine go first, then the snapshot and the report.
+func Run(ctx context.Context, c *config.Config, w Watch) (*filter.Report, error) {
+	options := arrowfile.DefaultOptions()
+	options.Replace = c.Output.Replace
+	first, err := open(ctx, c, options)
+	if err != nil {
+		return nil, err
+	}
+	defer first.Close()
+	record, choice := first.Record(), first.Choice()
+	if w.Chosen != nil {
+		w.Chosen(choice)
+	}
+	snapshotFile, err := openTarget(c.Output.Snapshot, c.Output.Replace)
+	if err != nil {
+		return nil, err
+	}
+	defer snapshotFile.close()
+	reportFile, err := openTarget(c.Output.Report, c.Output.Replace)
+	if err != nil {
+		return nil, err
+	}
+	defer reportFile.close()
+
+	sink, err := arrowfile.Create(
+		arrowfile.OutputPaths{Tagged: c.Output.Tagged, Quarantine: c.Output.Quarantine}, first, options)
+	if err != nil {
+		return nil, err
+	}
+	var last filter.Snapshot
+	s := filter.Sweep{
+		Config:     c.Filter,
+		Open:       func(context.Context) (filter.Source, error) { return arrowfile.Open(c.Input.File, record, options) },
+		Sink:       sink,
+		Progress:   w.Progress,
+		OnSnapshot: func(s filter.Snapshot) { last = s },
+		Now:        w.Now,
+	}
+	report, err := s.Run(ctx)
+	if err != nil {
+		return nil, err
+	}
+	report.Fields = used(choice)
+	if report.Rows.In == 0 {
+		report.Notes = append(report.Notes, c.Input.File+" has no rows, so there was nothing to judge")
+	}
+	if last != nil {
+		if err := snapshotFile.commit(func(w io.Writer) error { _, err := last.WriteTo(w); return err }); err != nil {
+			return nil, err
+		}
+	} else if snapshotFile != nil {
+		report.Notes = append(report.Notes, fmt.Sprintf("no snapshot was trained, so %s was not written", c.Output.Snapshot))
+	}
+	return report, reportFile.commit(func(w io.Writer) error { return writeReport(w, report) })
+}
+
+// open reads the input's beginning: the columns tell what there is to learn from, the first rows how the file is
+// compressed, which the output takes over.
+func open(ctx context.Context, c *config.Config, options arrowfile.Options) (*arrowfile.Source, error) {
+	source, err := arrowfile.Open(c.Input.File, c.Record, options)
+	if err != nil {
+		return nil, err
+	}
+	batch, err := source.Next(ctx)
+	switch {
+	case err == nil:
+		batch.Release()
+	case err != io.EOF: // a file without rows is no fault
+		source.Close()
+		return nil, err
+	}
+	return source, nil
+}
+
+func writeReport(w io.Writer, report *filter.Report) error {
+	e := json.NewEncoder(w)
+	e.SetEscapeHTML(false)
+	e.SetIndent("", "  ")
+	return e.Encode(report)
+}
+
+// used turns the connector's choice into the report's form.
+func used(choice []arrowfile.Choice) []filter.FieldUse {
+	uses := make([]filter.FieldUse, len(choice))
+	for i, c := range choice {
+		u := filter.FieldUse{Path: c.Column, Use: "left-out", Why: c.Why}
+		switch {
+		case c.Used:
+			u.Use, u.Kind = "feature", c.Kind.String()
+		case c.Why == "the label", c.Why == "the source", c.Why == "the time":
+			u.Use, u.Why = c.Why[len("the "):], ""
+		}
+		uses[i] = u
+	}
+	return uses
+}
+
+// ErrGate says that --gate can't tell: there is no estimate of the share of wrong labels.
+var ErrGate = errors.New("no estimate of the share of wrong labels, so the gate can't be judged")
+
+// Above tells whether the report's estimated share of wrong labels is above the gate; gate 0 is none. The error is
+// ErrGate when there is a gate but no estimate.
+func Above(r *filter.Report, gate float64) (bool, error) {
+	switch {
+	case gate == 0:
+		return false, nil
+	case r.Noise == nil || !(float64(r.Noise.Share.Value) >= 0):
+		return false, ErrGate
+	}
+	return float64(r.Noise.Share.Value) > gate, nil
+}
