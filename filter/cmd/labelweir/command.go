@@ -23,7 +23,9 @@ type command struct {
 // commands lists them in the order in which help shows them.
 func commands() []command {
 	return []command{
+		demoCommand(),
 		sweepCommand(),
+		inspectCommand(),
 		versionCommand(),
 		helpCommand(),
 	}
