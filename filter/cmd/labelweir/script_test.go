@@ -2,6 +2,7 @@ package main
 
 import (
 	"errors"
+	"flag"
 	"os"
 	"os/exec"
 	"strconv"
@@ -9,6 +10,8 @@ import (
 
 	"github.com/rogpeppe/go-internal/testscript"
 )
+
+var update = flag.Bool("update", false, "write what commands said into the scripts")
 
 func TestMain(m *testing.M) {
 	testscript.Main(m, map[string]func(){
@@ -20,10 +23,13 @@ func TestMain(m *testing.M) {
 // "exits CODE COMMAND..." runs a command that must end with that exit code.
 func TestScripts(t *testing.T) {
 	testscript.Run(t, testscript.Params{
+		UpdateScripts:      *update,
 		Dir:                "testdata/script",
 		RequireUniqueNames: true,
 		Cmds: map[string]func(*testscript.TestScript, bool, []string){
-			"exits": exits,
+			"exits":   exits,
+			"mkarrow": mkarrow,
+			"apples":  apples,
 		},
 	})
 }

@@ -15,7 +15,7 @@ import (
 
 // Watch is who wants to hear of a sweep while it runs. Each part may be nil.
 type Watch struct {
-	Chosen   func([]arrowfile.Choice)              // once, when the columns are known
+	Chosen   func([]arrowfile.Choice)              // once, when the columns are known and the outputs can be created
 	Progress func(phase string, done, total int64) // from one goroutine at a time
 	Now      func() time.Time                      // clock of the report's times; nil: time.Now
 }
@@ -32,9 +32,6 @@ func Run(ctx context.Context, c *config.Config, w Watch) (*filter.Report, error)
 	}
 	defer first.Close()
 	record, choice := first.Record(), first.Choice()
-	if w.Chosen != nil {
-		w.Chosen(choice)
-	}
 	snapshotFile, err := openTarget(c.Output.Snapshot, c.Output.Replace)
 	if err != nil {
 		return nil, err
@@ -50,6 +47,9 @@ func Run(ctx context.Context, c *config.Config, w Watch) (*filter.Report, error)
 		arrowfile.OutputPaths{Tagged: c.Output.Tagged, Quarantine: c.Output.Quarantine}, first, options)
 	if err != nil {
 		return nil, err
+	}
+	if w.Chosen != nil {
+		w.Chosen(choice)
 	}
 	var last filter.Snapshot
 	s := filter.Sweep{
