@@ -132,9 +132,7 @@ func (s *Scratch) polish(l *lattice, q float64, rng *rand.Rand) State {
 	start := s.best.j
 	copy(s.margin, l.margin)
 	s.renew(q)
-	s.measure(q)
-	s.ascend(held*s.hold, tolerance, rng)
-	s.consider(s.measure(q))
+	s.ascendFrom(q, held*s.hold, tolerance, rng)
 	status := s.cycle(Stage{Q: q, Tolerance: tolerance}, rounds*s.hold, rng)
 	if s.best.j >= start {
 		status = NoProgress

@@ -15,16 +15,20 @@ const (
 type PortfolioOptions struct {
 	WarmEpochs int           // epochs of the warm run, if there is a start
 	Cold       bool          // make the cold runs, graduated and plain descent, even if there is a start
-	Anneal     AnnealOptions // from the best of the runs before it; Sweeps 0: none
-	Hops       int           // of the shaken run, from the best of the runs before it; 0: none
+	Anneal     AnnealOptions // of each annealed run
+	Anneals    int           // annealed runs, by turns from the best so far and from zero weights
+	Hops       int           // of the shaken run, from the best so far; 0: none
 	Hysteresis float64       // share of J by which another run must beat the warm one
 }
 
 // DefaultPortfolio is the full portfolio for a problem of so many rows. Small problems have the rougher objectives and
-// the cheaper epochs, so they get more hops.
+// the cheaper epochs, so they get more runs and hops.
 func DefaultPortfolio(rows int) PortfolioOptions {
-	return PortfolioOptions{WarmEpochs: 5, Cold: true, Anneal: DefaultAnneal(),
-		Hops: min(60, max(4, 60_000/max(1, rows))), Hysteresis: 1e-3}
+	rows = max(1, rows)
+	opt := PortfolioOptions{WarmEpochs: 5, Cold: true, Anneal: DefaultAnneal(), Hysteresis: 1e-3}
+	opt.Anneals = min(20, max(1, 12_000/rows))
+	opt.Hops = min(240, max(4, 120_000/rows))
+	return opt
 }
 
 // Run is one member of a portfolio.
@@ -33,17 +37,15 @@ type Run struct {
 	State State
 }
 
-// Portfolio makes several runs for one q and returns them in the order made, with the index of the one to use. from is
-// the running state by the rows of p (see Carry), nil for a cold start. The annealed and the shaken run begin at the
-// best before them and end no higher; of runs as deep as each other to a millionth the first counts as the winner.
-func Portfolio(p *Problem, q float64, from *State, opt PortfolioOptions, rng *rand.Rand, s *Scratch) (runs []Run, best int) {
-	const same = 1e-6
-	running := -1
+// Portfolio makes several runs for one q and returns them in the order made, with the index of the one to use: the
+// best, or the warm one within the hysteresis of it. from is the running state by the rows of p (see Carry), nil for a
+// cold start. The shaken run begins at the best of those before it and ends no higher.
+func Portfolio(p *Problem, q float64, from *State, opt PortfolioOptions, rng *rand.Rand, s *Scratch) (runs []Run, use int) {
+	best, running := 0, -1
 	add := func(name string, st State) {
 		runs = append(runs, Run{name, st})
-		b := &runs[best].State
-		if k := len(runs) - 1; k > 0 && Less(&st, b) && (st.Collapsed != b.Collapsed || st.J < b.J*(1-same)) {
-			best = k
+		if Less(&st, &runs[best].State) {
+			best = len(runs) - 1
 		}
 	}
 	if from != nil {
@@ -54,14 +56,48 @@ func Portfolio(p *Problem, q float64, from *State, opt PortfolioOptions, rng *ra
 		add(NameGraduated, Graduated(p, nil, []float64{q}, rng, s)[0])
 		add(NameDescent, Descend(p, q, rng, s))
 	}
-	if opt.Anneal.Sweeps > 0 {
-		add(NameAnnealed, Annealed(p, q, &runs[best].State, opt.Anneal, rng, s))
+	if opt.Anneals > 0 {
+		add(NameAnnealed, anneals(p, q, &runs[best].State, opt, rng, s))
 	}
 	if opt.Hops > 0 {
 		add(NameShaken, Shaken(p, q, &runs[best].State, opt.Hops, rng, s))
 	}
-	if running >= 0 && best != running && holds(&runs[running].State, &runs[best].State, opt.Hysteresis) {
-		best = running
+	if running >= 0 && holds(&runs[running].State, &runs[best].State, opt.Hysteresis) {
+		return runs, running
 	}
 	return runs, best
+}
+
+// anneals is the best of the annealed runs.
+func anneals(p *Problem, q float64, from *State, opt PortfolioOptions, rng *rand.Rand, s *Scratch) State {
+	best := Annealed(p, q, from, opt.Anneal, rng, s)
+	for k := 1; k < opt.Anneals; k++ {
+		start := from
+		if k%2 == 1 {
+			start = nil
+		}
+		if st := Annealed(p, q, start, opt.Anneal, rng, s); Less(&st, &best) {
+			best = st
+		}
+	}
+	return best
+}
+
+// Winner is the index of the first run that is as good as the best to a ten-thousandth of J: later runs start from
+// earlier ones and win by the last digits of convergence alone.
+func Winner(runs []Run) int {
+	const same = 1e-4
+	best := 0
+	for k := range runs {
+		if Less(&runs[k].State, &runs[best].State) {
+			best = k
+		}
+	}
+	b := &runs[best].State
+	for k := range runs {
+		if st := &runs[k].State; st.Collapsed == b.Collapsed && st.J <= b.J*(1+same) {
+			return k
+		}
+	}
+	return best
 }

@@ -8,15 +8,15 @@ import (
 
 // Shaken searches over the flags: from the state, as often as hops, it draws every flag anew as if the row's margin
 // were blurred by logistic noise, solves for the weights with those flags held, descends, and goes on from the best
-// point so far. The blur goes round 0.3, 0.1 and 0.03 units of the margin, so mostly rows near q change sides. It
-// anneals the latent variables of the variational form, as Annealed does the weights; from's Alpha and Keep are by the
-// rows of p. Status is NoProgress if it ends where it began. Cost O(hops·epochs·rows·(Dense+Trees)).
+// point so far. The blur goes round 3, 1, 0.3 and 0.1 units of the margin: at first most rows may change sides, at last
+// those near q. It anneals the latent variables of the variational form, as Annealed does the weights; from's Alpha and
+// Keep are by the rows of p. Status is NoProgress if it ends where it began. Cost O(hops·epochs·rows·(Dense+Trees)).
 func Shaken(p *Problem, q float64, from *State, hops int, rng *rand.Rand, s *Scratch) State {
 	const rounds, last, tolerance, fine = 6, 20, 1e-2, 1e-3
 	if len(from.Alpha) != len(p.Rows) || len(from.Keep) != len(p.Rows) {
 		panic(fmt.Sprintf("chain: state of %d rows for %d", len(from.Alpha), len(p.Rows)))
 	}
-	blurs := [...]float64{.3, .1, .03}
+	blurs := [...]float64{3, 1, .3, .1}
 	s.load(p, rng)
 	s.restore(from)
 	start := s.measure(q)
@@ -25,9 +25,7 @@ func Shaken(p *Problem, q float64, from *State, hops int, rng *rand.Rand, s *Scr
 		s.measure(q)
 		s.blur(blurs[hop%len(blurs)], rng)
 		s.renew(q)
-		s.measure(q)
-		s.ascend(2*s.hold, tolerance, rng)
-		s.consider(s.measure(q))
+		s.ascendFrom(q, 2*s.hold, tolerance, rng)
 		s.cycle(Stage{Q: q, Tolerance: tolerance}, rounds*s.hold, rng)
 	}
 	s.measure(q)
@@ -36,6 +34,14 @@ func Shaken(p *Problem, q float64, from *State, hops int, rng *rand.Rand, s *Scr
 		status = NoProgress
 	}
 	return s.end(q, status)
+}
+
+// ascendFrom is ascend after the flags were set by other than the margins at w: margins are measured before, so that
+// every row that ought to is visited, and after, so that the point is considered.
+func (s *Scratch) ascendFrom(q float64, n int, tol float64, rng *rand.Rand) {
+	s.measure(q)
+	s.ascend(n, tol, rng)
+	s.consider(s.measure(q))
 }
 
 // blur adds logistic noise of so many units to all measured margins.

@@ -104,3 +104,12 @@ func TestLowestQ(t *testing.T) {
 		t.Error("without wrong labels q is not bounded")
 	}
 }
+
+// A bias of y = +1 everywhere has margin 1 on that class and −1 on the other, which every q > −1 drops.
+func TestCollapseCost(t *testing.T) {
+	for _, q := range []float64{-.9, -.5, 0} {
+		if got, want := CollapseCost(q, .5), .5*Value(q, 1)+.5*Value(q, -1); got != want {
+			t.Errorf("q=%v: %v, the constant answer costs %v", q, got, want)
+		}
+	}
+}
