@@ -33,39 +33,65 @@ func gather(parts []arrow.Record, mem memory.Allocator) (rec arrow.Record, err e
 	return array.NewRecord(schema, cols, rows), nil
 }
 
-// concatenate is array.Concatenate, except that it does not compare the dictionaries of all pieces once more.
+// concatenate is array.Concatenate with what it lacks: unions, slices of run-end-encoded arrays, and dictionaries
+// without comparing those of all pieces once more.
 func concatenate(arrs []arrow.Array, mem memory.Allocator) (arrow.Array, error) {
-	first, ok := arrs[0].(*array.Dictionary)
-	if !ok {
-		return array.Concatenate(arrs, mem)
+	switch first := arrs[0].(type) {
+	case *array.Dictionary:
+		indices := make([]arrow.Array, len(arrs))
+		for i, a := range arrs {
+			indices[i] = a.(*array.Dictionary).Indices()
+		}
+		all, err := array.Concatenate(indices, mem)
+		if err != nil {
+			return nil, err
+		}
+		defer all.Release()
+		return array.NewDictionaryArray(first.DataType(), all, first.Dictionary()), nil
+	case *array.SparseUnion, *array.DenseUnion:
+		return concatenateUnions(arrs, mem)
+	case *array.RunEndEncoded:
+		return concatenateRuns(arrs, mem)
+	case array.ExtensionArray:
+		storage := make([]arrow.Array, len(arrs))
+		for i, a := range arrs {
+			storage[i] = a.(array.ExtensionArray).Storage()
+		}
+		all, err := concatenate(storage, mem)
+		if err != nil {
+			return nil, err
+		}
+		defer all.Release()
+		return array.NewExtensionArrayWithStorage(first.DataType().(arrow.ExtensionType), all), nil
 	}
-	indices := make([]arrow.Array, len(arrs))
-	for i, a := range arrs {
-		indices[i] = a.(*array.Dictionary).Indices()
-	}
-	all, err := array.Concatenate(indices, mem)
-	if err != nil {
-		return nil, err
-	}
-	defer all.Release()
-	return array.NewDictionaryArray(first.DataType(), all, first.Dictionary()), nil
+	return array.Concatenate(arrs, mem)
 }
 
-// canGather tells whether arrow/go v16 concatenates a type rightly. It has nothing for unions and goes wrong on
-// sliced run-end-encoded arrays; tables with such columns are written in the pieces they come in.
+// canGather tells whether concatenate knows a type: all but unions and run-end-encoded values inside lists, maps and
+// structs.
 func canGather(dt arrow.DataType) bool {
 	switch dt := dt.(type) {
-	case arrow.UnionType, *arrow.RunEndEncodedType:
-		return false
 	case arrow.ExtensionType:
 		return canGather(dt.StorageType())
+	case *arrow.RunEndEncodedType:
+		return canGather(dt.Encoded())
 	case *arrow.DictionaryType:
-		return canGather(dt.ValueType)
+		return true
+	case arrow.UnionType:
+		return gatherChildren(dt.Fields(), canGather)
 	case arrow.NestedType:
-		for _, f := range dt.Fields() {
-			if !canGather(f.Type) {
-				return false
-			}
+		return gatherChildren(dt.Fields(), func(dt arrow.DataType) bool {
+			_, union := plain(dt).(arrow.UnionType)
+			return !union && plain(dt).ID() != arrow.RUN_END_ENCODED && canGather(dt)
+		})
+	}
+	return true
+}
+
+func gatherChildren(fields []arrow.Field, can func(arrow.DataType) bool) bool {
+	for _, f := range fields {
+		if !can(f.Type) {
+			return false
 		}
 	}
 	return true

@@ -46,7 +46,7 @@ type messages struct {
 	size   int64
 	mem    memory.Allocator
 	format Format
-	codec  Codec
+	recs   []block  // file: all record batches
 	footer []string // keys and values of the footer's own metadata, in turn
 
 	pos    int64   // stream: where the next message begins
@@ -119,8 +119,8 @@ func (m *messages) readFooter() error {
 		return err
 	}
 	root := fbRoot(b)
-	m.blocks = []block{{off: 8}} // the schema message follows the magic, as in a stream
-	for _, slot := range []int{2, 3} {
+	m.blocks = []block{{off: 8}}       // the schema message follows the magic, as in a stream
+	for _, slot := range []int{2, 3} { // dictionaries, record batches
 		pos, count := root.vector(slot)
 		for i := range count {
 			at := b[pos+24*i:]
@@ -133,6 +133,9 @@ func (m *messages) readFooter() error {
 				return fmt.Errorf("footer points to bytes %d+%d+%d of %d", bl.off, bl.meta, bl.body, m.size)
 			}
 			m.blocks = append(m.blocks, bl)
+			if slot == 3 {
+				m.recs = append(m.recs, bl)
+			}
 		}
 	}
 	keys, values := root.keyValues(4)
@@ -171,6 +174,9 @@ func (m *messages) Message() (*ipc.Message, error) {
 	if _, err := m.r.ReadAt(body.Bytes(), next); err != nil && n > 0 {
 		return nil, fmt.Errorf("message body at byte %d: %w", next, err)
 	}
+	if err := unpackedSizes(root, body.Bytes()); err != nil {
+		return nil, err
+	}
 	m.Release()
 	m.pos, m.seen = next+n, next+n
 	head := memory.NewBufferBytes(meta)
@@ -201,36 +207,6 @@ func (m *messages) readMeta(off int64) (meta []byte, next int64, err error) {
 		return nil, 0, fmt.Errorf("message header at byte %d: %w", next, err)
 	}
 	return meta, next + n, nil
-}
-
-// check looks at the buffers of a record or dictionary message before arrow does, and notes the codec.
-func (m *messages) check(root fbTable, body int64) error {
-	rec, ok := root.table(2)
-	if !ok {
-		return errors.New("message without a header")
-	}
-	switch root.byte(1, 0) {
-	case headerDictionary:
-		if rec, ok = rec.table(1); !ok {
-			return errors.New("dictionary message without values")
-		}
-	case headerRecord:
-		m.batch++
-	default:
-		return nil
-	}
-	if c, ok := rec.table(3); ok {
-		m.codec = [...]Codec{LZ4, Zstd}[c.byte(0, 0)]
-	}
-	pos, n := rec.vector(2)
-	for i := range n {
-		at := rec.b[pos+16*i:]
-		off, size := int64(binary.LittleEndian.Uint64(at)), int64(binary.LittleEndian.Uint64(at[8:]))
-		if off < 0 || size < 0 || off > body || size > body-off {
-			return fmt.Errorf("buffer %d stands at bytes %d+%d of a message of %d", i, off, size, body)
-		}
-	}
-	return nil
 }
 
 // missing is how many record batches the footer lists that were not handed out.

@@ -24,7 +24,7 @@ type output struct {
 	src    *Source
 	schema *arrow.Schema
 	opt    Options
-	loose  bool // pieces are written as they come, see canGather
+	codec  Codec
 
 	pieces      []arrow.Record
 	rows, bytes int64
@@ -33,7 +33,7 @@ type output struct {
 	tags        *tagColumns
 
 	buf     *bufio.Writer
-	wr      *ipc.Writer // made when the first rows are there, for only then the codec is known
+	wr      *ipc.Writer // made at first use
 	written int64       // rows
 }
 
@@ -41,10 +41,7 @@ var errBlurredDictionary = errors.New("a dictionary of floating-point numbers is
 	"which can't be written; decode the column before sweeping")
 
 func newOutput(t *target, src *Source, schema *arrow.Schema, opt Options) *output {
-	o := &output{target: t, src: src, schema: schema, opt: opt, tags: newTagColumns(opt.mem)}
-	for _, f := range src.in.rd.Schema().Fields() {
-		o.loose = o.loose || !canGather(f.Type)
-	}
+	o := &output{target: t, src: src, schema: schema, opt: opt, codec: src.codec(), tags: newTagColumns(opt.mem)}
 	o.buf = bufio.NewWriterSize(t.file, 1<<18)
 	return o
 }
@@ -66,17 +63,6 @@ func (o *output) add(rec arrow.Record, runs []run, tags []filter.Tag) error {
 			p.Release()
 		}
 	}()
-	if o.loose {
-		for i, p := range parts {
-			if err := o.addPiece(p, tags[runs[i].lo:runs[i].hi]); err != nil {
-				return err
-			}
-			if err := o.flush(); err != nil {
-				return err
-			}
-		}
-		return nil
-	}
 	if len(parts) == 1 && parts[0].NumRows() == rec.NumRows() {
 		return o.addPiece(parts[0], tags)
 	}
@@ -156,14 +142,11 @@ func (o *output) flush() error {
 	if o.rows == 0 {
 		return nil
 	}
-	rec := o.pieces[0]
-	if !o.loose {
-		var err error
-		if rec, err = gather(o.pieces, o.opt.mem); err != nil {
-			return err
-		}
-		defer rec.Release()
+	rec, err := gather(o.pieces, o.opt.mem)
+	if err != nil {
+		return err
 	}
+	defer rec.Release()
 	tags := o.tags.take()
 	cols := append(append([]arrow.Array(nil), rec.Columns()...), tags...)
 	full := array.NewRecord(o.schema, cols, o.rows)
@@ -193,7 +176,7 @@ func (o *output) writer() *ipc.Writer {
 	if o.wr == nil {
 		msgs := o.src.in.msgs
 		opts := []ipc.Option{ipc.WithSchema(o.schema), ipc.WithAllocator(o.opt.mem)}
-		switch msgs.codec {
+		switch o.codec {
 		case LZ4:
 			opts = append(opts, ipc.WithLZ4())
 		case Zstd:

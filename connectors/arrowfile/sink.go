@@ -52,6 +52,10 @@ func create(d disk.FS, out OutputPaths, src *Source, opt Options) (*Sink, error)
 			return nil, &Error{Path: src.in.path, Column: f.Name, What: "is already there, from an earlier run",
 				Do: "drop the weir_ columns of the input first", Kind: ErrColumn}
 		}
+		if !canGather(f.Type) {
+			return nil, &Error{Path: src.in.path, Column: f.Name, What: fmt.Sprintf("rows of type %s can't be copied", f.Type),
+				Do: "unions and run-end-encoded values inside of lists and structs are not supported: drop or flatten the column", Kind: ErrColumn}
+		}
 	}
 	if out.Tagged == "" {
 		return nil, &Error{Path: src.in.path, What: "no output is named for it", Do: "name a file for the tagged records", Kind: ErrTarget}

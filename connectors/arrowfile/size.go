@@ -44,6 +44,19 @@ func sizeOf(d arrow.ArrayData, lo, n int) int64 {
 			sum += sizeOf(c, c.Offset()+lo, n)
 		}
 		return sum
+	case *arrow.SparseUnionType:
+		sum := int64(n)
+		for _, c := range d.Children() {
+			sum += sizeOf(c, c.Offset()+lo, n)
+		}
+		return sum
+	case *arrow.DenseUnionType:
+		sum := 5 * int64(n)
+		for i := lo; i < lo+n; i++ {
+			c := d.Children()[dt.ChildIDs()[int8(d.Buffers()[1].Bytes()[i])]]
+			sum += sizeOf(c, c.Offset()+int(arrow.Int32Traits.CastFromBytes(d.Buffers()[2].Bytes())[i]), 1)
+		}
+		return sum
 	case arrow.BinaryViewDataType:
 		sum := nulls + int64(n*arrow.ViewHeaderSizeBytes)
 		for _, v := range arrow.ViewHeaderTraits.CastFromBytes(d.Buffers()[1].Bytes())[lo : lo+n] {
@@ -53,7 +66,7 @@ func sizeOf(d arrow.ArrayData, lo, n int) int64 {
 	case arrow.FixedWidthDataType:
 		return nulls + int64(n)*int64(dt.BitWidth())/8
 	}
-	return 16 * int64(n) // unions and runs: a guess
+	return 16 * int64(n) // runs: a guess
 }
 
 // between gives the offsets at lo and lo+n.

@@ -128,6 +128,12 @@ func (s *Source) Path() string { return s.in.path }
 // Format is the file's format.
 func (s *Source) Format() Format { return s.in.msgs.format }
 
+// codec is how the input is compressed; damaged bytes count as not.
+func (s *Source) codec() (c Codec) {
+	defer func() { _ = recover() }()
+	return s.in.msgs.firstCodec()
+}
+
 // Progress tells how many bytes of how many have been read.
 func (s *Source) Progress() (done, size int64) { return s.in.msgs.seen, s.in.msgs.size }
 

@@ -5,6 +5,7 @@ import (
 	"fmt"
 
 	"github.com/apache/arrow/go/v16/arrow"
+	"github.com/apache/arrow/go/v16/arrow/array"
 	"github.com/apache/arrow/go/v16/arrow/bitutil"
 )
 
@@ -70,6 +71,10 @@ func (in *input) validateType(dt arrow.DataType, d arrow.ArrayData) error {
 				return fmt.Errorf("field %q has %d values for %d rows", dt.Field(i).Name, c.Len(), d.Len())
 			}
 		}
+	case arrow.UnionType:
+		return unionFits(dt, d)
+	case *arrow.RunEndEncodedType:
+		return runsFit(d)
 	case arrow.BinaryViewDataType:
 		return viewsFit(d)
 	case arrow.FixedWidthDataType:
@@ -171,6 +176,65 @@ func indicesFit[T uint8 | uint16 | uint32 | uint64](d arrow.ArrayData, limit int
 		if uint64(k) >= uint64(limit) && (valid == nil || bitutil.BitIsSet(valid, d.Offset()+i)) {
 			return fmt.Errorf("index %d of a dictionary of %d", k, limit)
 		}
+	}
+	return nil
+}
+
+// unionFits tells whether every row has a known type code and, in a dense union, an offset into its child.
+func unionFits(dt arrow.UnionType, d arrow.ArrayData) error {
+	end := d.Offset() + d.Len()
+	if d.Len() > 0 && bufLen(d, 1) < end {
+		return fmt.Errorf("%d type codes for %d rows", bufLen(d, 1), d.Len())
+	}
+	dense := dt.Mode() == arrow.DenseMode
+	if dense && d.Len() > 0 && bufLen(d, 2) < 4*end {
+		return fmt.Errorf("%d bytes of offsets for %d rows", bufLen(d, 2), d.Len())
+	}
+	known := map[arrow.UnionTypeCode]int{}
+	for k, c := range dt.TypeCodes() {
+		known[c] = k
+		if !dense && d.Children()[k].Len() < end {
+			return fmt.Errorf("child %d has %d values for %d rows", k, d.Children()[k].Len(), end)
+		}
+	}
+	for i := d.Offset(); i < end; i++ {
+		k, ok := known[int8(d.Buffers()[1].Bytes()[i])]
+		if !ok {
+			return fmt.Errorf("type code %d is unknown", int8(d.Buffers()[1].Bytes()[i]))
+		}
+		if dense {
+			if at := arrow.Int32Traits.CastFromBytes(d.Buffers()[2].Bytes())[i]; at < 0 || int(at) >= d.Children()[k].Len() {
+				return fmt.Errorf("offset %d of a child with %d values", at, d.Children()[k].Len())
+			}
+		}
+	}
+	return nil
+}
+
+// runsFit tells whether the run ends rise and cover all rows.
+func runsFit(d arrow.ArrayData) error {
+	ends, values := d.Children()[0], d.Children()[1]
+	if err := wide(ends, ends.DataType().(arrow.FixedWidthDataType).BitWidth()); err != nil {
+		return err
+	}
+	if ends.Len() != values.Len() {
+		return fmt.Errorf("%d run ends for %d values", ends.Len(), values.Len())
+	}
+	arr := array.MakeFromData(ends)
+	defer arr.Release()
+	list, err := appendNumbers(nil, arr)
+	if err != nil {
+		return err
+	}
+	last := 0.
+	for _, e := range list {
+		if !(e > last) {
+			return fmt.Errorf("run end %v after %v", e, last)
+		}
+		last = e
+	}
+	if last < float64(d.Offset()+d.Len()) {
+		return fmt.Errorf("runs end at %v of %d rows", last, d.Offset()+d.Len())
 	}
 	return nil
 }
