@@ -15,6 +15,7 @@ type flips uint8
 
 const (
 	none   flips = iota // the identity
+	fixed               // one rate, given
 	single              // one rate
 	sparse              // chosen entries of their own over one background rate
 	free                // every entry of its own
@@ -167,7 +168,7 @@ func (r *row) zShare(p *params, z, o, src int, g float64) float64 {
 
 func (p *params) updateFlips(c *counts, s shape, k int) {
 	switch s.flips {
-	case none:
+	case none, fixed:
 		return
 	case single:
 		off, n := 0.0, 0.0

@@ -1,6 +1,7 @@
 package noise
 
 import (
+	"fmt"
 	"math"
 	"slices"
 )
@@ -24,18 +25,33 @@ func start(d *Data) *params {
 	return p
 }
 
+// singleRates are the rates at which a single-rate model is fitted; together they integrate the rate out.
+var singleRates = [...]float64{0.01, 0.02, 0.04, 0.07, 0.10, 0.14, 0.18, 0.22, 0.26, 0.30, 0.34, 0.38}
+
+// rateSteps of EM lead from one rate to the next.
+const rateSteps = 12
+
 // family fits none, single, free and sparse models from p, and returns them in that order.
 func family(d *Data, p *params, prefix string) []*candidate {
 	k := d.Classes
 	out := []*candidate{run(d, p.clone(), prefix+"none", shape{flips: none}, coldSteps)}
-	one := out[0].p.clone()
-	one.Flip = uniform(k, 0.1)
-	out = append(out, run(d, one, prefix+"single", shape{flips: single}, coldSteps))
-	all := run(d, out[1].p.clone(), prefix+"free", shape{flips: free}, coldSteps)
+	one := out[0]
+	var best *candidate
+	for _, rate := range singleRates {
+		p := one.p.clone()
+		p.Flip = uniform(k, rate)
+		one = run(d, p, fmt.Sprintf("%ssingle %.2f", prefix, rate), shape{flips: fixed}, rateSteps)
+		if best == nil || one.evidence > best.evidence {
+			best = one
+		}
+		out = append(out, one)
+	}
+	best.shape.flips = single
+	all := run(d, best.p.clone(), prefix+"free", shape{flips: free}, coldSteps)
 	out = append(out, all)
 	if k > 2 {
-		if e := chosenEntries(d, out[1].p, all.p); len(e) > 0 && len(e) < k*(k-1) {
-			out = append(out, run(d, out[1].p.clone(), prefix+"sparse", shape{flips: sparse, entries: e}, coldSteps))
+		if e := chosenEntries(d, best.p, all.p); len(e) > 0 && len(e) < k*(k-1) {
+			out = append(out, run(d, best.p.clone(), prefix+"sparse", shape{flips: sparse, entries: e}, coldSteps))
 		}
 	}
 	return out
@@ -45,7 +61,7 @@ func family(d *Data, p *params, prefix string) []*candidate {
 func run(d *Data, p *params, name string, s shape, steps int) *candidate {
 	c := &candidate{name: name, p: p, shape: s}
 	c.ll = fit(d, p, s, steps, nil)
-	c.evidence = c.ll - c.penalty(d)
+	c.evidence = c.ll - c.penalty(d) + sureness(d, p)
 	k := d.Classes
 	for i := range k {
 		if rate := 1 - p.Flip[i*k+i]; rate >= 0.5 {
@@ -63,8 +79,8 @@ func (c *candidate) penalty(d *Data) float64 {
 	k := float64(d.Classes)
 	v := float64(len(c.p.Slopes))
 	switch c.shape.flips {
-	case single:
-		v++
+	case single, fixed:
+		v += 1 + math.Log(float64(len(singleRates))/3)
 	case free:
 		v += k * (k - 1)
 	case sparse:
@@ -133,11 +149,14 @@ func chosenEntries(d *Data, one, all *params) []int {
 }
 
 // extend adds models with boundary flips, source factors, and both to the single model and the better of the others.
-func extend(d *Data, all []*candidate) []*candidate {
-	bases := []*candidate{all[1]}
+func extend(d *Data, all []*candidate) (out []*candidate) {
+	var bases []*candidate
 	var better *candidate
-	for _, c := range all[2:] {
-		if !c.refused && (better == nil || c.evidence > better.evidence) {
+	for _, c := range all {
+		switch {
+		case c.shape.flips == single:
+			bases = append(bases, c)
+		case c.shape.flips != none && c.shape.flips != fixed && !c.refused && (better == nil || c.evidence > better.evidence):
 			better = c
 		}
 	}
@@ -161,8 +180,8 @@ func extend(d *Data, all []*candidate) []*candidate {
 				p.Rho = slices.Repeat([]float64{1}, d.Sources)
 				name += "+source"
 			}
-			all = append(all, run(d, p, name, s, coldSteps))
+			out = append(out, run(d, p, name, s, coldSteps))
 		}
 	}
-	return all
+	return out
 }

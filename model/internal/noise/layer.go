@@ -31,19 +31,19 @@ const (
 // Fit fits a layer and returns it with the candidates' facts.
 func Fit(d *Data) (*Layer, *Facts) {
 	all := family(d, start(d), "")
-	if p := slopes(d, all[1]); p != nil {
-		all = append(all, family(d, p, "slopes+")...)
+	one := all[1]
+	for _, c := range all {
+		if c.shape.flips == single {
+			one = c
+		}
 	}
-	first := all[:len(all):len(all)]
-	n := 3
-	for n < len(first) && first[n].name == "sparse" {
-		n++
+	more := extend(d, all)
+	if p := slopes(d, one); p != nil {
+		second := family(d, p, "slopes+")
+		more = append(more, second...)
+		more = append(more, extend(d, second)...)
 	}
-	extended := extend(d, append([]*candidate(nil), first[:n]...))[n:]
-	if n < len(first) {
-		extended = append(extended, extend(d, append([]*candidate(nil), first[n:]...))[len(first)-n:]...)
-	}
-	all = append(first, extended...)
+	all = append(all, more...)
 	l := average(d.Classes, all)
 	l.fitSteps(d)
 	return l, newFacts(d, l, all)

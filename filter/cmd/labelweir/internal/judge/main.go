@@ -16,6 +16,7 @@ import (
 	"os"
 	"os/signal"
 	"path/filepath"
+	"runtime/pprof"
 	"strconv"
 	"strings"
 
@@ -29,6 +30,7 @@ type settings struct {
 	seeds         []int
 	procs         int
 	out, compare  string
+	profile       string
 }
 
 func main() {
@@ -59,6 +61,17 @@ func run(ctx context.Context, args []string, stdout, stderr io.Writer) error {
 			return err
 		}
 	}
+	if s.profile != "" {
+		w, err := os.Create(s.profile)
+		if err != nil {
+			return err
+		}
+		defer w.Close()
+		if err := pprof.StartCPUProfile(w); err != nil {
+			return err
+		}
+		defer pprof.StopCPUProfile()
+	}
 	cells := runAll(ctx, jobs, s.procs, fitModel, stderr)
 	if err := report(stdout, cells, base); err != nil {
 		return err
@@ -86,6 +99,7 @@ func parse(args []string, stderr io.Writer) (settings, error) {
 	f.IntVar(&s.procs, "procs", 2, "cells run at the same time, one core each")
 	f.StringVar(&s.out, "out", "", "file to write every cell's figures to, tab-separated")
 	f.StringVar(&s.compare, "compare", "", "file written by --out to tell the differences against")
+	f.StringVar(&s.profile, "profile", "", "file to write a CPU profile to")
 	for len(args) > 0 {
 		if err := f.Parse(args); err != nil {
 			return s, err
