@@ -116,6 +116,7 @@ func (s *Scratch) discrete(l *lattice, q float64) State {
 		s.w[c] = l.weight(l.code[c])
 	}
 	clear(s.alpha)
+	s.moved()
 	j := s.measure(q)
 	for i, m := range s.margin {
 		s.keep[i] = m > q
@@ -131,6 +132,7 @@ func (s *Scratch) polish(l *lattice, q float64, rng *rand.Rand) State {
 	l.measure()
 	start := s.best.j
 	copy(s.margin, l.margin)
+	s.marginsAt = -1
 	s.renew(q)
 	s.ascendFrom(q, held*s.hold, tolerance, rng)
 	status := s.cycle(Stage{Q: q, Tolerance: tolerance}, rounds*s.hold, rng)

@@ -16,50 +16,17 @@ const (
 	blockRows = 16
 )
 
-// dot is w·x of packed row i.
-func (s *Scratch) dot(i int) float64 {
-	x := s.x[i*s.dense : (i+1)*s.dense]
-	w := s.w
-	wd := w[:len(x)]
-	var a, b, c, d float64
-	for k, v := range x {
-		a += float64(v) * wd[k]
-	}
-	l := s.leaves[i*s.trees : (i+1)*s.trees]
-	var e float64
-	for ; len(l) >= 4; l = l[4:] {
-		e += w[l[0]]
-		b += w[l[1]]
-		c += w[l[2]]
-		d += w[l[3]]
-	}
-	for _, k := range l {
-		e += w[k]
-	}
-	return a + s.value*(e+b+c+d)
-}
-
-// add adds t·x of packed row i to w.
-func (s *Scratch) add(i int, t float64) {
-	x := s.x[i*s.dense : (i+1)*s.dense]
-	w := s.w
-	wd := w[:len(x)]
-	for k, v := range x {
-		wd[k] += t * float64(v)
-	}
-	t *= s.value
-	for _, k := range s.leaves[i*s.trees : (i+1)*s.trees] {
-		w[k] += t
-	}
-}
-
 // measure brings all margins up to date with w and returns J_q(w).
 func (s *Scratch) measure(q float64) float64 {
+	if s.marginsAt != s.at {
+		for i := range s.margin {
+			s.margin[i] = s.y[i] * s.dot(i)
+		}
+		s.marginsAt = s.at
+	}
 	var sum float64
 	var kept, all [2]float64
-	for i := range s.margin {
-		m := s.y[i] * s.dot(i)
-		s.margin[i] = m
+	for i, m := range s.margin {
 		o, class := s.omega[i], 0
 		if s.y[i] > 0 {
 			class = 1
@@ -96,6 +63,7 @@ func (s *Scratch) renew(q float64) (changed int) {
 		if a := s.alpha[i]; !keep && a != 0 {
 			s.alpha[i] = 0
 			s.add(i, -a*s.y[i])
+			s.moved()
 		}
 	}
 	return changed
@@ -136,6 +104,7 @@ func (s *Scratch) epoch(rng *rand.Rand) float64 {
 			s.add(i, (next-a)*y)
 		}
 	}
+	s.moved()
 	s.epochs++
 	return worst
 }

@@ -13,7 +13,7 @@ func (s *Scratch) collapsed() bool {
 
 // remember makes the last measured point, whose objective is j, the best one.
 func (s *Scratch) remember(j float64) {
-	s.best.j, s.best.collapsed = j, s.collapsed()
+	s.best.j, s.best.collapsed, s.best.at = j, s.collapsed(), s.at
 	copy(s.best.w, s.w)
 	copy(s.best.alpha, s.alpha)
 	copy(s.best.keep, s.keep)
@@ -30,7 +30,10 @@ func (s *Scratch) consider(j float64) {
 
 // recall goes back to the best point.
 func (s *Scratch) recall() {
-	copy(s.w, s.best.w)
+	if s.at != s.best.at {
+		s.at = s.best.at
+		copy(s.w, s.best.w)
+	}
 	copy(s.alpha, s.best.alpha)
 	copy(s.keep, s.best.keep)
 }

@@ -14,12 +14,19 @@ func (s *Scratch) descend(st Stage, rng *rand.Rand) (status Status) {
 
 // cycle is descend, for so many epochs, from a point already measured and with a best point already remembered.
 func (s *Scratch) cycle(st Stage, epochs int, rng *rand.Rand) (status Status) {
+	const patience = 6 // J may rise for some rounds after many rows are dropped, before it falls below where it was
+	gain := st.Tolerance * 1e-3
+	still := 0 // rounds in a row that gained next to nothing: a few flags may flicker for ever
 	for e := 0; e < epochs && status != Converged; {
 		changed := s.renew(st.Q)
 		worst, used := s.ascend(min(s.hold, epochs-e), st.Tolerance, rng)
 		e += used
+		before := s.best.j
 		s.consider(s.measure(st.Q))
-		if changed == 0 && worst <= st.Tolerance && s.steady(st.Q) {
+		if still++; s.best.j < before*(1-gain) {
+			still = 0
+		}
+		if still == patience || changed == 0 && worst <= st.Tolerance && s.steady(st.Q) {
 			status = Converged
 		}
 	}

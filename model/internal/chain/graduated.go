@@ -8,7 +8,8 @@ import (
 
 // Stage is one step of graduation: up to Rounds renewals of the flags at Q, each followed by as many epochs as w needs
 // to follow (2 where rows are many, up to 8 where they are few), ended early when the flags stand still and no
-// projected gradient, in units of the margin, is above Tolerance.
+// projected gradient, in units of the margin, is above Tolerance, or when six rounds in a row lower J by less than a
+// thousandth of Tolerance, as a share of J.
 type Stage struct {
 	Q         float64
 	Rounds    int

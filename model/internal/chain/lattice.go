@@ -54,10 +54,12 @@ func (l *lattice) build(s *Scratch, q, radius float64, bits int) {
 func (l *lattice) index(s *Scratch, cols int) {
 	leafCols := cols - l.dense
 	l.starts = resize(l.starts, leafCols+1)
-	l.rows = resize(l.rows, len(s.leaves))
+	l.rows = resize(l.rows, s.n*s.trees)
 	clear(l.starts)
-	for _, c := range s.leaves {
-		l.starts[int(c)-l.dense+1]++
+	for i := range l.n {
+		for t := range s.trees {
+			l.starts[s.leaf(i, t)-l.dense+1]++
+		}
 	}
 	for c := range leafCols {
 		l.starts[c+1] += l.starts[c]
@@ -72,8 +74,8 @@ func (l *lattice) index(s *Scratch, cols int) {
 		}
 	}
 	for i := range l.n {
-		for _, c := range s.leaves[i*s.trees : (i+1)*s.trees] {
-			at := &l.starts[int(c)-l.dense]
+		for t := range s.trees {
+			at := &l.starts[s.leaf(i, t)-l.dense]
 			l.rows[*at] = int32(i)
 			*at++
 		}

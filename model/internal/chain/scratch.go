@@ -13,12 +13,15 @@ type Scratch struct {
 
 	perm   []int32   // packed row → entry of the problem's Rows
 	x      []float32 // n×dense
-	leaves []int32   // n×trees, already offset by dense
+	leaves []int32   // n×trees, already offset by dense; empty where thin is not
+	thin   []uint16  // the same for few enough columns; nil otherwise
+	thins  []uint16  // memory of thin
 	y      []float64 // ±1
 	omega  []float64
 	ratio  []float64 // λ/ω
 	denom  []float64 // ‖x‖² + λ/ω
 
+	wide   []float64 // narrow or more weights, of which w is the front
 	w      []float64 // dense, then leaves
 	alpha  []float64
 	keep   []bool
@@ -28,6 +31,10 @@ type Scratch struct {
 
 	hold   int // epochs between renewals of the flags
 	epochs int // since load
+
+	at        int // names the present w; another after every change
+	marginsAt int // the w that margin was measured at
+	named     int // names given so far
 
 	kept [2]float64 // share of the weight of class −1 and +1 above q, as of the last measure
 	best mark       // best point met at the present q
@@ -39,6 +46,7 @@ type Scratch struct {
 type mark struct {
 	j         float64
 	collapsed bool
+	at        int // its w's name
 
 	w     []float64
 	alpha []float64
@@ -59,10 +67,18 @@ func (s *Scratch) load(p *Problem, rng *rand.Rand) {
 	n := len(p.Rows)
 	s.n, s.dense, s.trees, s.value, s.lambda, s.epochs = n, p.Dense, p.Trees, p.LeafValue, p.Lambda, 0
 	s.perm = resize(s.perm, n)
-	s.x, s.leaves = resize(s.x, n*p.Dense), resize(s.leaves, n*p.Trees)
+	s.x = resize(s.x, n*p.Dense)
+	s.wide = resize(s.wide, max(narrow, p.Columns()))
+	s.w = s.wide[:p.Columns()]
+	if p.Columns() <= narrow {
+		s.thins = resize(s.thins, n*p.Trees)
+		s.thin, s.leaves = s.thins, s.leaves[:0]
+	} else {
+		s.leaves, s.thin = resize(s.leaves, n*p.Trees), nil
+	}
 	s.y, s.omega = resize(s.y, n), resize(s.omega, n)
 	s.ratio, s.denom = resize(s.ratio, n), resize(s.denom, n)
-	s.w, s.alpha = resize(s.w, p.Columns()), resize(s.alpha, n)
+	s.alpha = resize(s.alpha, n)
 	s.keep, s.margin = resize(s.keep, n), resize(s.margin, n)
 	s.active = resize(s.active, n)[:0]
 	for i := range s.perm {
@@ -100,9 +116,12 @@ func (s *Scratch) pack(p *Problem, i, k int) {
 	for _, v := range x {
 		norm += float64(v) * float64(v)
 	}
-	to := s.leaves[i*s.trees : (i+1)*s.trees]
 	for t, c := range p.Leaves[r*p.Trees : (r+1)*p.Trees] {
-		to[t] = c + int32(s.dense)
+		if s.thin != nil {
+			s.thin[i*s.trees+t] = uint16(int(c) + s.dense)
+		} else {
+			s.leaves[i*s.trees+t] = c + int32(s.dense)
+		}
 	}
 	s.y[i], s.omega[i] = float64(p.Y[k]), p.Omega[k]
 	s.ratio[i] = p.Lambda / p.Omega[k]
@@ -116,6 +135,13 @@ func (s *Scratch) reset() {
 	for i := range s.keep {
 		s.keep[i] = true
 	}
+	s.moved()
+}
+
+// moved gives the present w a new name.
+func (s *Scratch) moved() {
+	s.named++
+	s.at = s.named
 }
 
 // state copies the run's state out, in the order of the problem's rows.
@@ -139,4 +165,5 @@ func (s *Scratch) restore(st *State) {
 			s.add(i, a*s.y[i])
 		}
 	}
+	s.moved()
 }

@@ -44,8 +44,9 @@ func (s *Scratch) ascendFrom(q float64, n int, tol float64, rng *rand.Rand) {
 	s.consider(s.measure(q))
 }
 
-// blur adds logistic noise of so many units to all measured margins.
+// blur adds logistic noise of so many units to all measured margins, which are then no longer those of w.
 func (s *Scratch) blur(units float64, rng *rand.Rand) {
+	s.marginsAt = -1
 	for i := range s.margin {
 		u := rng.Float64()
 		for u == 0 {

@@ -11,7 +11,7 @@ type Status uint8
 // The ends of a run.
 const (
 	Limit      Status = iota // the epochs were used up
-	Converged                // the flags stood still and the projected gradient fell below the stage's tolerance
+	Converged                // flags and weights stand still to the stage's tolerance, or J does
 	NoProgress               // a continuation that did not lower J: the state is the start of it
 )
 

@@ -1,0 +1,98 @@
+package chain
+
+// narrow is the number of columns up to which leaf columns are kept in 16 bits: half the memory to stream, and an index
+// that cannot leave an array of this length, so the loops below need no bounds check.
+const narrow = 1 << 16
+
+// dot is w·x of packed row i.
+func (s *Scratch) dot(i int) float64 {
+	sum := dotDense(s.x[i*s.dense:(i+1)*s.dense], s.w)
+	if s.thin != nil {
+		return sum + s.value*sumThin(s.thin[i*s.trees:(i+1)*s.trees], (*[narrow]float64)(s.wide))
+	}
+	return sum + s.value*sumWide(s.leaves[i*s.trees:(i+1)*s.trees], s.w)
+}
+
+// add adds t·x of packed row i to w. The caller says moved when it is done with all rows.
+func (s *Scratch) add(i int, t float64) {
+	x := s.x[i*s.dense : (i+1)*s.dense]
+	w := s.w[:len(x)]
+	for k, v := range x {
+		w[k] += t * float64(v)
+	}
+	t *= s.value
+	if s.thin != nil {
+		w := (*[narrow]float64)(s.wide)
+		for _, c := range s.thin[i*s.trees : (i+1)*s.trees] {
+			w[c] += t
+		}
+		return
+	}
+	w = s.w
+	for _, c := range s.leaves[i*s.trees : (i+1)*s.trees] {
+		w[c] += t
+	}
+}
+
+// leaf is the column of packed row i's leaf in tree t.
+func (s *Scratch) leaf(i, t int) int {
+	if s.thin != nil {
+		return int(s.thin[i*s.trees+t])
+	}
+	return int(s.leaves[i*s.trees+t])
+}
+
+// dotDense is Σ x·w over the length of x, in four sums so that additions need not wait for each other.
+func dotDense(x []float32, w []float64) float64 {
+	w = w[:len(x)]
+	var a, b, c, d float64
+	for len(x) >= 4 && len(w) >= 4 {
+		a += float64(x[0]) * w[0]
+		b += float64(x[1]) * w[1]
+		c += float64(x[2]) * w[2]
+		d += float64(x[3]) * w[3]
+		x, w = x[4:], w[4:]
+	}
+	for k, v := range x {
+		a += float64(v) * w[k]
+	}
+	return (a + b) + (c + d)
+}
+
+// sumThin is Σ w[c] over the columns c.
+func sumThin(l []uint16, w *[narrow]float64) float64 {
+	var a, b, c, d, e, f, g, h float64
+	for ; len(l) >= 8; l = l[8:] {
+		a += w[l[0]]
+		b += w[l[1]]
+		c += w[l[2]]
+		d += w[l[3]]
+		e += w[l[4]]
+		f += w[l[5]]
+		g += w[l[6]]
+		h += w[l[7]]
+	}
+	for _, k := range l {
+		a += w[k]
+	}
+	return ((a + b) + (c + d)) + ((e + f) + (g + h))
+}
+
+// sumWide is sumThin for any number of columns, in the same order of additions.
+func sumWide(l []int32, w []float64) float64 {
+	var a, b, c, d, e, f, g, h float64
+	for ; len(l) >= 8; l = l[8:] {
+		a += w[l[0]]
+		b += w[l[1]]
+		c += w[l[2]]
+		d += w[l[3]]
+		e += w[l[4]]
+		f += w[l[5]]
+		g += w[l[6]]
+		h += w[l[7]]
+	}
+	for _, k := range l {
+		a += w[k]
+	}
+	return ((a + b) + (c + d)) + ((e + f) + (g + h))
+}
