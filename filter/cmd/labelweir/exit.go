@@ -45,20 +45,28 @@ type stopped struct{ signal os.Signal }
 
 func (s stopped) Error() string { return "stopped by " + s.signal.String() }
 
+// bySignal tells whether err comes from a signal that has ended ctx.
+func bySignal(ctx context.Context, err error) (s stopped, ok bool) {
+	if errors.As(err, &s) {
+		return s, true
+	}
+	return s, errors.Is(err, context.Canceled) && errors.As(context.Cause(ctx), &s)
+}
+
 // code gives the exit code of what a command returned.
 func code(ctx context.Context, err error) int {
-	var f *failure
-	var a *argv.Error
-	var s stopped
-	var faults config.Faults
-	switch {
-	case err == nil:
-		return 0
-	case errors.Is(err, context.Canceled) && errors.As(context.Cause(ctx), &s):
+	if s, ok := bySignal(ctx, err); ok {
 		if n, ok := s.signal.(syscall.Signal); ok {
 			return exitSignals + int(n)
 		}
 		return exitFailed
+	}
+	var f *failure
+	var a *argv.Error
+	var faults config.Faults
+	switch {
+	case err == nil:
+		return 0
 	case errors.As(err, &f):
 		return f.code
 	case errors.As(err, &a):
@@ -89,8 +97,7 @@ func faultCode(faults config.Faults) int {
 
 // say writes err for a person to read: one line a fault, each beginning with the program's name.
 func say(ctx context.Context, p *process, err error) {
-	var s stopped
-	if errors.Is(err, context.Canceled) && errors.As(context.Cause(ctx), &s) {
+	if s, ok := bySignal(ctx, err); ok {
 		fmt.Fprintf(p.err, "labelweir: %v; no output was written\n", s)
 		return
 	}

@@ -16,6 +16,7 @@ func main() { os.Exit(start()) }
 
 // start runs the command on the process's own streams until it ends or a signal stops it, and gives the exit code.
 func start() int {
+	limitAsError()
 	ctx, stop := context.WithCancelCause(context.Background())
 	defer stop(nil)
 	signals := make(chan os.Signal, 1) // one is enough to stop; a second one while stopping changes nothing
