@@ -44,8 +44,8 @@ func (e *Error) Error() string {
 		s += strings.Join(at, ", ") + ": "
 	}
 	s += e.What
-	if e.Err != nil {
-		s += ": " + e.Err.Error()
+	if e.Err != nil && e.Err.Error() != "" {
+		s += ": " + strings.TrimPrefix(e.Err.Error(), "arrow/ipc: ")
 	}
 	if e.Do != "" {
 		s += "; " + e.Do

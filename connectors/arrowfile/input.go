@@ -66,7 +66,7 @@ func cantOpen(path string, err error) error {
 	e := &Error{Path: path, What: "can't be opened", Kind: ErrUnreadable, Err: err}
 	switch {
 	case errors.Is(err, fs.ErrNotExist):
-		e.What, e.Do, e.Err = "there is no such file", "check the path", notExist{}
+		e.What, e.Do, e.Err = "there is no such file", "check the path", quiet{fs.ErrNotExist}
 	case errors.Is(err, fs.ErrPermission):
 		e.Do = "check its permissions"
 	}
@@ -85,7 +85,7 @@ func otherFormat(path string) string {
 func (in *input) damaged(what string, err error) error {
 	e := &Error{Path: in.path, What: what, Do: "the file is damaged or cut short: write it again", Kind: ErrUnreadable, Err: err}
 	if in.msgs != nil {
-		e.Batch = in.msgs.batch
+		e.Batch = in.msgs.at
 	}
 	return e
 }
@@ -120,8 +120,8 @@ func (in *input) close() error {
 	return in.file.Close()
 }
 
-// notExist is fs.ErrNotExist without a text of its own: the sentence before it says it already.
-type notExist struct{}
+// quiet is a cause without a text of its own: the sentence before it says it already.
+type quiet struct{ error }
 
-func (notExist) Error() string        { return "no such file or directory" }
-func (notExist) Is(target error) bool { return target == fs.ErrNotExist }
+func (quiet) Error() string   { return "" }
+func (q quiet) Unwrap() error { return q.error }

@@ -54,6 +54,7 @@ type messages struct {
 	last   *ipc.Message
 	seen   int64 // byte behind the last message read
 	batch  int   // record batches handed out
+	at     int   // record batch being read, counted from 1
 }
 
 var errNotArrow = errors.New("not Arrow IPC")
@@ -147,6 +148,7 @@ func (m *messages) readFooter() error {
 
 // Message gives the next message or io.EOF. It is valid until the next call.
 func (m *messages) Message() (*ipc.Message, error) {
+	m.at = m.batch + 1
 	off := m.pos
 	if m.format == File {
 		if len(m.blocks) == 0 {

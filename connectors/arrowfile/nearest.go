@@ -5,9 +5,15 @@ import "strings"
 // nearest is the name that takes the fewest edits to get from what was asked for, capitals aside; "" when even that
 // needs more than a third of the letters changed.
 func nearest(asked string, names []string) string {
-	best, least := "", max(1, len([]rune(asked))/3)+1
+	asked = strings.ToLower(asked)
+	best, least := "", 2*max(1, len([]rune(asked))/3)+1
 	for _, n := range names {
-		if d := edits(strings.ToLower(asked), strings.ToLower(n)); d < least {
+		low := strings.ToLower(n)
+		d := 2 * edits(asked, low)
+		if strings.HasPrefix(asked, low) || strings.HasPrefix(low, asked) {
+			d-- // a missing or added ending rather than a changed letter
+		}
+		if d < least {
 			best, least = n, d
 		}
 	}

@@ -8,7 +8,9 @@ type Options struct {
 	Peek    int  // first rows looked at when fields are inferred; default 10000
 	Replace bool // write over targets that exist; default false
 
-	mem memory.Allocator // for tests that count what was not given back
+	// For tests: counts what was not given back, and cuts record batches smaller.
+	mem                   memory.Allocator
+	blockRows, blockBytes int64
 }
 
 // DefaultOptions gives the defaults named in Options.
@@ -22,6 +24,9 @@ func (o Options) filled() Options {
 	}
 	if o.Peek <= 0 {
 		o.Peek = d.Peek
+	}
+	if o.blockRows == 0 {
+		o.blockRows, o.blockBytes = blockRows, blockBytes
 	}
 	if o.mem == nil {
 		o.mem = memory.NewGoAllocator()

@@ -26,11 +26,11 @@ type output struct {
 	opt    Options
 	codec  Codec
 
-	pieces      []arrow.Record
-	rows, bytes int64
-	dicts       []arrow.ArrayData // of the pieces, or of what was written last
-	last        arrow.Record      // keeps dicts alive
-	tags        *tagColumns
+	pieces     []arrow.Record
+	rows, bits int64
+	dicts      []arrow.ArrayData // of the pieces, or of what was written last
+	last       arrow.Record      // keeps dicts alive
+	tags       *tagColumns
 
 	buf     *bufio.Writer
 	wr      *ipc.Writer // made at first use
@@ -85,9 +85,9 @@ func (o *output) addPiece(piece arrow.Record, tags []filter.Tag) error {
 		return err
 	}
 	for at := int64(0); at < piece.NumRows(); {
-		rest := piece.NewSlice(at, min(at+blockRows-o.rows, piece.NumRows()))
-		n := fitting(rest, blockBytes-o.bytes)
-		if o.rows > 0 && n == 1 && sizeOfRecord(rest, 1) > blockBytes-o.bytes {
+		rest := piece.NewSlice(at, min(at+o.opt.blockRows-o.rows, piece.NumRows()))
+		n := fitting(rest, 8*o.opt.blockBytes-o.bits)
+		if o.rows > 0 && n == 1 && sizeOfRecord(rest, 1) > 8*o.opt.blockBytes-o.bits {
 			n = 0 // the block is full
 		}
 		if n > 0 {
@@ -96,7 +96,7 @@ func (o *output) addPiece(piece arrow.Record, tags []filter.Tag) error {
 				o.tags.add(&tags[at+i])
 			}
 		}
-		full := o.rows == blockRows || n < rest.NumRows()
+		full := o.rows == o.opt.blockRows || n < rest.NumRows()
 		rest.Release()
 		if at += n; full {
 			if err := o.flush(); err != nil {
@@ -110,7 +110,7 @@ func (o *output) addPiece(piece arrow.Record, tags []filter.Tag) error {
 func (o *output) keep(piece arrow.Record) {
 	o.pieces = append(o.pieces, piece)
 	o.rows += piece.NumRows()
-	o.bytes += sizeOfRecord(piece, int(piece.NumRows()))
+	o.bits += sizeOfRecord(piece, int(piece.NumRows()))
 }
 
 // follow ends the block when a dictionary changes, so that each block has its dictionaries as they came.
@@ -168,7 +168,7 @@ func (o *output) forget() {
 		p.Release()
 	}
 	clear(o.pieces)
-	o.pieces, o.rows, o.bytes = o.pieces[:0], 0, 0
+	o.pieces, o.rows, o.bits = o.pieces[:0], 0, 0
 }
 
 // writer makes arrow's writer at first use.

@@ -252,7 +252,7 @@ func (s *Source) codes(c *coder, part arrow.Record, index int) ([]int32, error) 
 
 // valueError says that the value in row i of the current slice means nothing as what the column is used for.
 func (s *Source) valueError(index, i int, err error) error {
-	e := &Error{Path: s.in.path, Batch: s.in.msgs.batch, Row: s.row + int64(i) + 1, Column: s.names[index], Kind: ErrUnreadable}
+	e := &Error{Path: s.in.path, Batch: s.in.msgs.at, Row: s.row + int64(i) + 1, Column: s.names[index], Kind: ErrUnreadable}
 	if f := fractional(0); errors.As(err, &f) {
 		e.What, e.Do = f.Error(), "convert the column to text, integers or a dictionary, or cut it into ranges"
 		return e

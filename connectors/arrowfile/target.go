@@ -32,18 +32,18 @@ type target struct {
 // newTarget checks path and creates the temporary file.
 func newTarget(d disk.FS, path string, replace bool) (*target, error) {
 	t := &target{disk: d, path: path, replace: replace}
-	if err := t.free(); err != nil {
-		return nil, err
-	}
 	dir := filepath.Dir(path)
 	info, err := d.Stat(dir)
 	switch {
 	case errors.Is(err, fs.ErrNotExist):
-		return nil, &Error{Path: path, What: fmt.Sprintf("its folder %s does not exist", dir), Do: "create the folder first", Kind: ErrTarget, Err: nil}
+		return nil, &Error{Path: path, What: fmt.Sprintf("its folder %s does not exist", dir), Do: "create the folder first", Kind: ErrTarget}
 	case err != nil:
 		return nil, t.fault("its folder can't be looked at", ErrTarget, err)
 	case !info.IsDir():
 		return nil, &Error{Path: path, What: fmt.Sprintf("%s is not a folder", dir), Do: "check the path", Kind: ErrTarget}
+	}
+	if err := t.free(); err != nil {
+		return nil, err
 	}
 	for n := 0; ; n++ {
 		t.temp = filepath.Join(dir, fmt.Sprintf(".%s.part-%d-%d", filepath.Base(path), os.Getpid(), n))
@@ -69,7 +69,7 @@ func (t *target) free() error {
 	case !info.Mode().IsRegular():
 		return &Error{Path: t.path, What: "exists and is not a regular file", Do: "name another output", Kind: ErrTarget}
 	case !t.replace:
-		return &Error{Path: t.path, What: "exists", Do: "name another output or allow it to be replaced", Kind: ErrTarget, Err: fs.ErrExist}
+		return &Error{Path: t.path, What: "exists", Do: "name another output or allow it to be replaced", Kind: ErrTarget, Err: quiet{fs.ErrExist}}
 	}
 	t.existed = true
 	return nil
@@ -160,7 +160,12 @@ func distinct(d disk.FS, input string, out OutputPaths) error {
 		if path == "" {
 			continue
 		}
-		if info, err := d.Stat(path); err == nil && os.SameFile(in, info) {
+		info, err := d.Stat(path)
+		switch {
+		case errors.Is(err, fs.ErrNotExist), errors.Is(err, syscall.ENOTDIR): // more about that in newTarget
+		case err != nil:
+			return (&target{path: path}).fault("can't be looked at", ErrTarget, err)
+		case os.SameFile(in, info):
 			return &Error{Path: path, What: "is the input", Do: "name another output", Kind: ErrTarget}
 		}
 	}

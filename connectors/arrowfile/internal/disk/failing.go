@@ -8,9 +8,10 @@ import (
 // Failing lets one call of a file system fail, or all calls from one on; it tells which it was.
 type Failing struct {
 	FS    FS
-	Err   error // what the failing call returns
-	At    int   // number of the call that fails, from 0
-	Stays bool  // later writes and creates fail too, as on a full disk
+	Err   error  // what the failing call returns
+	At    int    // number of the call that fails, from 0
+	Call  string // only calls of this name count and fail; empty: all
+	Stays bool   // later writes and creates fail too, as on a full disk
 
 	calls int
 	name  string
@@ -22,6 +23,9 @@ func (f *Failing) Fired() (name, path string, fired bool) { return f.name, f.pat
 
 // fail counts a call and tells whether it is to fail.
 func (f *Failing) fail(name, path string) error {
+	if f.Call != "" && f.Call != name {
+		return nil
+	}
 	n := f.calls
 	f.calls++
 	if n == f.At {
