@@ -4,8 +4,6 @@ import (
 	"encoding/json"
 	"io"
 	"math"
-
-	"labelweir/model"
 )
 
 // ReportVersion is the version of the report's JSON form. Fields may be added within a version; a field that goes or
@@ -14,22 +12,22 @@ const ReportVersion = 1
 
 // Report tells what a sweep did and found. Shares lie in [0,1]; a number that is not known is null in JSON.
 type Report struct {
-	Version   int           `json:"version"`
-	Mode      string        `json:"mode"`             // observe or divert
-	Window    WindowUsed    `json:"window"`           // what was trained on
-	Rows      Rows          `json:"rows"`             // the meters: in = tagged + quarantine + unreadable
-	Snapshot  string        `json:"snapshot"`         // id of the newest snapshot; empty when there was none
-	Precision float64       `json:"precision"`        // wanted among held-back records
-	Threshold *float64      `json:"threshold"`        // of the newest snapshot; null when nothing may be held back
-	Noise     *Noise        `json:"noise"`            // null when there was no snapshot
-	Latest    *Noise        `json:"latest,omitempty"` // sliding: of the newest snapshot alone
-	Choice    *model.Choice `json:"choice"`           // of the newest snapshot
-	Chains    []model.Chain `json:"chains"`           // added up over all retrains
-	Retrains  Retrains      `json:"retrains"`
-	Breaker   Breaker       `json:"breaker"`
-	Times     []Spent       `json:"times"`
-	Fields    []FieldUse    `json:"fields"` // filled in by whoever chose the fields
-	Notes     []string      `json:"notes"`  // sentences for the reader: what could not be done and why
+	Version   int        `json:"version"`
+	Mode      string     `json:"mode"`             // observe or divert
+	Window    WindowUsed `json:"window"`           // what was trained on
+	Rows      Rows       `json:"rows"`             // the meters: in = tagged + quarantine + unreadable
+	Snapshot  string     `json:"snapshot"`         // id of the newest snapshot; empty when there was none
+	Precision float64    `json:"precision"`        // wanted among held-back records
+	Threshold Number     `json:"threshold"`        // of the newest snapshot; above 1: nothing may be held back; null: no snapshot
+	Noise     *Noise     `json:"noise"`            // null when there was no snapshot
+	Latest    *Noise     `json:"latest,omitempty"` // sliding: of the newest snapshot alone
+	Choice    *Choice    `json:"choice"`           // of the newest snapshot
+	Chains    []Chain    `json:"chains"`           // added up over all retrains
+	Retrains  Retrains   `json:"retrains"`
+	Breaker   Breaker    `json:"breaker"`
+	Times     []Spent    `json:"times"`
+	Fields    []FieldUse `json:"fields"` // filled in by whoever chose the fields
+	Notes     []string   `json:"notes"`  // sentences for the reader: what could not be done and why
 }
 
 // WindowUsed says what was trained on.
@@ -115,6 +113,29 @@ func (n *Number) UnmarshalJSON(b []byte) error {
 	return json.Unmarshal(b, (*float64)(n))
 }
 
+// Choice is what the search settled on.
+type Choice struct {
+	Encoder string   `json:"encoder"`
+	Q       Number   `json:"q"`
+	Lambda  Number   `json:"lambda"`
+	Why     string   `json:"why"`
+	Members []Member `json:"members"` // scorers whose weighted sum is the score
+}
+
+// Member is one scorer of the sum, with its weight in log-odds.
+type Member struct {
+	Name   string `json:"name"`
+	Weight Number `json:"weight"`
+}
+
+// Chain counts how often one kind of optimisation run was tried and had the lowest objective.
+type Chain struct {
+	Name    string `json:"name"`
+	Tried   int    `json:"tried"`
+	Won     int    `json:"won"`
+	MeanGap Number `json:"mean_gap"` // mean of (J − best J)/best J over its tries
+}
+
 // Retrains counts fits.
 type Retrains struct {
 	Cold   int `json:"cold"`   // searched for encoder, λ and q
@@ -124,8 +145,9 @@ type Retrains struct {
 
 // Breaker tells when diverting was stopped.
 type Breaker struct {
-	Open   bool           `json:"open"` // at the end, for any cause
-	Events []BreakerEvent `json:"events"`
+	Open   bool           `json:"open"`   // at the end, for any cause
+	Opened int            `json:"opened"` // how often
+	Events []BreakerEvent `json:"events"` // the first 100
 }
 
 // BreakerEvent is one opening or closing.

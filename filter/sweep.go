@@ -3,7 +3,10 @@ package filter
 import (
 	"context"
 	"errors"
+	"fmt"
 	"time"
+
+	"labelweir/model"
 )
 
 // Sweep is one pass over a stored input: every record is judged once, tagged, and delivered in order to the sink.
@@ -13,10 +16,12 @@ type Sweep struct {
 	Config Config
 
 	// Open starts a new reading of the input from its beginning. A sweep with the whole input as one window reads it
-	// twice, one with a sliding window once; at most one reading is open at a time.
+	// twice, one with a sliding window once; at most one reading is open at a time, and Run closes it.
 	Open func(context.Context) (Source, error)
 
-	Sink    Sink    // Run calls Commit once everything is delivered, and Close in any case
+	// Sink is called from one goroutine at a time. Run calls Commit once everything is delivered, and Close in any case.
+	Sink Sink
+
 	Learner Learner // nil: a model.Trainer with the configured seed, precision and workers
 
 	// Progress, if set, is told what is being done: a phase's name, how much is done and of how much, 0 when not
@@ -32,9 +37,69 @@ type Sweep struct {
 
 // Run sweeps. It returns when everything it started has ended. The report is there when the error is nil. Errors:
 // those of Config.Validate, of the source, the sink and the learner as they are; ErrChanged, ErrNoTime, ErrBatch.
+// After an error nothing was committed, unless it is Commit's or Close's own.
 func (s *Sweep) Run(ctx context.Context) (*Report, error) {
-	if err := s.Config.Validate(); err != nil {
-		return nil, errors.Join(err, s.Sink.Close())
+	r, err := s.run(ctx)
+	if err == nil {
+		err = s.Sink.Commit(ctx)
 	}
-	return nil, errors.Join(errors.New("sweep is not written yet"), s.Sink.Close())
+	if err != nil && ctx.Err() != nil { // every part has noticed it; once is enough
+		err = context.Cause(ctx)
+	}
+	if err = both(err, s.Sink.Close()); err != nil {
+		return nil, err
+	}
+	return r, nil
+}
+
+// both joins two errors, and leaves one alone as it is.
+func both(a, b error) error {
+	switch {
+	case a == nil:
+		return b
+	case b == nil:
+		return a
+	}
+	return errors.Join(a, b)
+}
+
+func (s *Sweep) run(ctx context.Context) (*Report, error) {
+	if err := s.Config.Validate(); err != nil {
+		return nil, err
+	}
+	now := s.Now
+	if now == nil {
+		now = time.Now
+	}
+	watch := newStopwatch(now)
+	l := s.Learner
+	if l == nil {
+		l = s.trainer(watch)
+	}
+	judge := s.wholeInput
+	if s.Config.Sliding {
+		judge = s.slidingInput
+	}
+	r, err := judge(ctx, watch, l)
+	if err != nil {
+		return nil, err
+	}
+	if n := r.Rows; n.In != n.Tagged+n.Quarantine+n.Unreadable {
+		return nil, fmt.Errorf("filter: %d records came in, but %d tagged, %d held back and %d unreadable went out",
+			n.In, n.Tagged, n.Quarantine, n.Unreadable)
+	}
+	return r, nil
+}
+
+// trainer makes the learner of the real model, which tells the stopwatch and Progress where it is.
+func (s *Sweep) trainer(watch *stopwatch) Learner {
+	o := model.DefaultOptions()
+	o.Seed, o.Precision, o.Workers = s.Config.Seed, s.Config.Precision, s.Config.Workers
+	o.Progress = func(phase string, done, total int) {
+		watch.enter("fit/" + phase)
+		if s.Progress != nil {
+			s.Progress(phase, int64(done), int64(total))
+		}
+	}
+	return NewLearner(model.NewTrainer(o))
 }
