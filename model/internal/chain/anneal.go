@@ -135,7 +135,7 @@ func (s *Scratch) polish(l *lattice, q float64, rng *rand.Rand) State {
 	s.marginsAt = -1
 	s.renew(q)
 	s.ascendFrom(q, held*s.hold, tolerance, rng)
-	status := s.cycle(Stage{Q: q, Tolerance: tolerance}, rounds*s.hold, rng)
+	status := s.cycleOut(Stage{Q: q, Tolerance: tolerance}, rounds*s.hold, rng)
 	if s.best.j >= start {
 		status = NoProgress
 	}

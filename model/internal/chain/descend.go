@@ -30,7 +30,44 @@ func (s *Scratch) cycle(st Stage, epochs int, rng *rand.Rand) (status Status) {
 			status = Converged
 		}
 	}
+	s.stray = s.at != s.best.at
 	s.recall()
+	return status
+}
+
+// settle goes down from the best point where that is not the last one: a run may pass a point lower than the bottom it
+// comes to rest in. With flags as the best point's margins ask and the weights solved out each time, J can only fall.
+func (s *Scratch) settle(st Stage, rng *rand.Rand) (status Status) {
+	const rounds, epochs = 50, 20 // epochs in units of hold
+	for range rounds {
+		before := s.best.j
+		s.measure(st.Q)
+		changed := s.renew(st.Q)
+		worst, _ := s.ascendFrom(st.Q, epochs*s.hold, st.Tolerance, rng)
+		if changed == 0 && worst <= st.Tolerance {
+			s.recall()
+			return Converged
+		}
+		if s.best.j >= before {
+			break // less than the weights were solved out to
+		}
+	}
+	s.recall()
+	return Limit
+}
+
+// descendOut is descend and, if it ends elsewhere than at its last point, settle.
+func (s *Scratch) descendOut(st Stage, rng *rand.Rand) (status Status) {
+	s.remember(s.measure(st.Q))
+	return s.cycleOut(st, st.Rounds*s.hold, rng)
+}
+
+// cycleOut is cycle and, if it ends elsewhere than at its last point, settle.
+func (s *Scratch) cycleOut(st Stage, epochs int, rng *rand.Rand) (status Status) {
+	status = s.cycle(st, epochs, rng)
+	if s.stray {
+		status = s.settle(st, rng)
+	}
 	return status
 }
 
@@ -44,6 +81,15 @@ func (s *Scratch) ascend(n int, tol float64, rng *rand.Rand) (worst float64, use
 			break
 		}
 	}
+	return worst, used
+}
+
+// ascendFrom is ascend after flags were set by other margins than those at the present w, or rows dropped: margins are
+// measured before, so that every row that ought to is visited, and after, so that the point is considered.
+func (s *Scratch) ascendFrom(q float64, n int, tol float64, rng *rand.Rand) (worst float64, used int) {
+	s.measure(q)
+	worst, used = s.ascend(n, tol, rng)
+	s.consider(s.measure(q))
 	return worst, used
 }
 

@@ -56,7 +56,11 @@ func Graduated(p *Problem, path []Stage, want []float64, rng *rand.Rand, s *Scra
 	out := make([]State, len(want))
 	done := 0
 	for _, st := range path {
-		status := s.descend(st, rng)
+		if !slices.Contains(want, st.Q) {
+			s.descend(st, rng)
+			continue
+		}
+		status := s.descendOut(st, rng)
 		for k, q := range want {
 			if q == st.Q {
 				out[k] = s.end(q, status)

@@ -36,8 +36,9 @@ type Scratch struct {
 	marginsAt int // the w that margin was measured at
 	named     int // names given so far
 
-	kept [2]float64 // share of the weight of class −1 and +1 above q, as of the last measure
-	best mark       // best point met at the present q
+	kept  [2]float64 // share of the weight of class −1 and +1 above q, as of the last measure
+	stray bool       // the last cycle ended elsewhere than at its best point
+	best  mark       // best point met at the present q
 
 	lattice lattice // of annealed runs
 }

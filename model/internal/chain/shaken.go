@@ -29,19 +29,11 @@ func Shaken(p *Problem, q float64, from *State, hops int, rng *rand.Rand, s *Scr
 		s.cycle(Stage{Q: q, Tolerance: tolerance}, rounds*s.hold, rng)
 	}
 	s.measure(q)
-	status := s.cycle(Stage{Q: q, Tolerance: fine}, last*s.hold, rng)
+	status := s.cycleOut(Stage{Q: q, Tolerance: fine}, last*s.hold, rng)
 	if s.best.j >= start {
 		status = NoProgress
 	}
 	return s.end(q, status)
-}
-
-// ascendFrom is ascend after the flags were set by other than the margins at w: margins are measured before, so that
-// every row that ought to is visited, and after, so that the point is considered.
-func (s *Scratch) ascendFrom(q float64, n int, tol float64, rng *rand.Rand) {
-	s.measure(q)
-	s.ascend(n, tol, rng)
-	s.consider(s.measure(q))
 }
 
 // blur adds logistic noise of so many units to all measured margins, which are then no longer those of w.
