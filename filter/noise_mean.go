@@ -9,11 +9,6 @@ import (
 
 func notANumber() Number { return Number(math.NaN()) }
 
-// rateOf turns a model's estimate into the report's.
-func rateOf(e model.Estimate) Rate {
-	return Rate{Value: Number(e.Value), Low: Number(e.Low), High: Number(e.High), Rows: e.Rows}
-}
-
 // noiseOf gives what one snapshot found.
 func noiseOf(f *model.Facts) *Noise {
 	m := newNoiseMean()

@@ -2,7 +2,6 @@ package filter
 
 import (
 	"encoding/json"
-	"io"
 	"math"
 )
 
@@ -172,6 +171,3 @@ type FieldUse struct {
 	Kind string `json:"kind"`          // number, category, vector; empty when it is no feature
 	Why  string `json:"why,omitempty"` // why it was left out
 }
-
-// WriteText writes a summary for people: plain text, at most 100 columns wide.
-func (r *Report) WriteText(w io.Writer) error { return nil }
