@@ -59,8 +59,8 @@ func enumerate(p *Problem, q, radius float64, b int) float64 {
 	}
 }
 
-// tiny draws an instance of at most 20 weight bits.
-func tiny(rng *rand.Rand, most int) (p *Problem, b int) {
+// small draws an instance of at most 20 weight bits.
+func small(rng *rand.Rand, most int) (p *Problem, b int) {
 	for {
 		b = 2 + rng.IntN(5)
 		d := 1 + rng.IntN(6)
@@ -86,7 +86,7 @@ func TestAnnealerFindsTheProvenOptimum(t *testing.T) {
 		if k%20 == 0 {
 			most = 20
 		}
-		p, b := tiny(rng, most)
+		p, b := small(rng, most)
 		q := qs[rng.IntN(3)]
 		want := enumerate(p, q, 1/math.Sqrt(p.Lambda), b)
 		opt := AnnealOptions{Bits: b, Sweeps: 1000, Cycles: 24, Hot: .3, Cold: 3e-3, Bounded: true}

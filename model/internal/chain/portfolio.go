@@ -22,11 +22,13 @@ type PortfolioOptions struct {
 }
 
 // DefaultPortfolio is the full portfolio for a problem of so many rows. Small problems have the rougher objectives and
-// the cheaper epochs, so they get more runs and hops.
+// the cheaper epochs, so they get more runs, sweeps and hops.
 func DefaultPortfolio(rows int) PortfolioOptions {
 	rows = max(1, rows)
 	opt := PortfolioOptions{WarmEpochs: 5, Cold: true, Anneal: DefaultAnneal(), Hysteresis: 1e-3}
 	opt.Anneals = min(20, max(1, 12_000/rows))
+	opt.Anneal.Bits = 6
+	opt.Anneal.Sweeps = min(300, max(40, 160_000/rows))
 	opt.Hops = min(240, max(4, 120_000/rows))
 	return opt
 }

@@ -19,7 +19,7 @@ type Problem struct {
 	*Design
 	Rows   []int32   // rows of the design
 	Y      []int8    // ±1, one an entry of Rows
-	Omega  []float64 // positive weights, one an entry of Rows, sum 1
+	Omega  []float64 // weights ≥ 0, one an entry of Rows, sum 1
 	Lambda float64   // > 0
 }
 

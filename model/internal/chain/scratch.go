@@ -108,6 +108,9 @@ func (s *Scratch) holdFor() int {
 	return min(most, least+int(2*load/float64(max(1, s.n))))
 }
 
+// tiny stands in for a weight of zero, whose row then has no say but does no harm.
+const tiny = 1e-300
+
 // pack copies entry k of the problem to packed row i.
 func (s *Scratch) pack(p *Problem, i, k int) {
 	r := int(p.Rows[k])
@@ -117,15 +120,20 @@ func (s *Scratch) pack(p *Problem, i, k int) {
 	for _, v := range x {
 		norm += float64(v) * float64(v)
 	}
-	for t, c := range p.Leaves[r*p.Trees : (r+1)*p.Trees] {
-		if s.thin != nil {
-			s.thin[i*s.trees+t] = uint16(int(c) + s.dense)
-		} else {
-			s.leaves[i*s.trees+t] = c + int32(s.dense)
+	from, shift := p.Leaves[r*p.Trees:(r+1)*p.Trees], int32(s.dense)
+	if s.thin != nil {
+		to := s.thin[i*s.trees:][:len(from)]
+		for t, c := range from {
+			to[t] = uint16(c + shift)
+		}
+	} else {
+		to := s.leaves[i*s.trees:][:len(from)]
+		for t, c := range from {
+			to[t] = c + shift
 		}
 	}
 	s.y[i], s.omega[i] = float64(p.Y[k]), p.Omega[k]
-	s.ratio[i] = p.Lambda / p.Omega[k]
+	s.ratio[i] = p.Lambda / max(p.Omega[k], tiny)
 	s.denom[i] = norm + s.ratio[i]
 }
 
