@@ -33,7 +33,6 @@ func start() int {
 		out:      os.Stdout,
 		err:      os.Stderr,
 		terminal: term.Is(os.Stderr),
-		getenv:   os.LookupEnv,
 		environ:  os.Environ,
 	}, os.Args[1:])
 }
@@ -43,6 +42,5 @@ type process struct {
 	out      io.Writer // data asked for; nothing else
 	err      io.Writer // everything a person reads
 	terminal bool      // err is a terminal
-	getenv   func(string) (string, bool)
 	environ  func() []string
 }

@@ -16,6 +16,7 @@ var update = flag.Bool("update", false, "write what commands said into the scrip
 func TestMain(m *testing.M) {
 	testscript.Main(m, map[string]func(){
 		"labelweir": func() { os.Exit(start()) },
+		"tags":      tagsMain,
 	})
 }
 
