@@ -7,12 +7,15 @@ import (
 )
 
 const (
-	// farMore is how much the share of records that disagree with the model must rise for the breaker to open: more
-	// than a grader or a field gone wrong brings about, less than labels that have taken on another meaning do.
-	farMore = 0.25
+	// tolerated is the rise of the share of records that disagree with the model that is taken for more wrong labels,
+	// which are what is looked for: as much as one grader of several, or one field, gone wrong may bring about.
+	tolerated = 0.10
+
+	// farMore is the rise that the test is made for: labels that have taken on another meaning.
+	farMore = 0.30
 
 	// changeLevel is the level of Page's test. The mean number of records between two false alarms is at least
-	// exp(changeLevel), a million, as long as records disagree independently and no more often than the window's did
+	// exp(changeLevel), a million, as long as records disagree independently and no more often than is tolerated
 	// (Lorden 1971, theorem 2).
 	changeLevel = 13.815510557964274
 
@@ -22,7 +25,7 @@ const (
 
 // change watches how often the observed label and the model disagree on records the model was not trained on, one
 // after the other: Page's test (Page 1954, often named Page–Hinkley) in its likelihood form, for a share that rises
-// from the window's to farMore above it,
+// from p₀ = normal + tolerated to p₁ = normal + farMore,
 //
 //	g ← max(0, g + ln(p₁/p₀)) for a disagreement, g ← max(0, g + ln((1−p₁)/(1−p₀))) for an agreement,
 //
@@ -31,7 +34,7 @@ const (
 type change struct {
 	cooldown int
 
-	normal    float64 // p₀: largest share of disagreement that is normal for the newest snapshot
+	normal    float64 // largest share of disagreement that is normal for the newest snapshot
 	up, down  float64 // steps of g
 	g         float64
 	since     int64 // first row since g was 0
@@ -56,9 +59,9 @@ func (c *change) fitted(scores []model.Score) {
 		}
 	}
 	p := (float64(k) + 1) / (float64(n) + 2)
-	c.normal = min(p+2*math.Sqrt(p*(1-p)/(float64(n)+2)), 0.7)
-	p1 := min(c.normal+farMore, 0.95)
-	c.up, c.down = math.Log(p1/c.normal), math.Log((1-p1)/(1-c.normal))
+	c.normal = min(p+2*math.Sqrt(p*(1-p)/(float64(n)+2)), 0.65)
+	p0, p1 := c.normal+tolerated, c.normal+farMore
+	c.up, c.down = math.Log(p1/p0), math.Log((1-p1)/(1-p0))
 }
 
 // disagrees tells whether another class is ahead of the observed one; false when the row has no score.
@@ -93,8 +96,8 @@ func (c *change) arrive(row int64, s *model.Score) bool {
 
 // slice is called before each retrain with the oldest row of the window that the newest snapshot was fitted on; it
 // judges the slice of records since then, and tells whether the breaker closes. A slice is back to normal when its
-// share of disagreement is at most half of farMore above what is normal for the snapshot, and for the one at the
-// opening, too; but when all rows before the change have left the window only the snapshot's own counts, as the new
+// share of disagreement is no more than tolerated above what is normal for the snapshot, and for the one at the opening,
+// too; but when all rows before the change have left the window only the snapshot's own counts, as the new
 // state may be a noisier one.
 func (c *change) slice(oldest int64) (closed bool) {
 	if !c.open || c.seen < minSlice {
@@ -104,7 +107,7 @@ func (c *change) slice(oldest int64) (closed bool) {
 	if oldest < c.onset {
 		most = min(most, c.atOpening)
 	}
-	if c.share() > most+farMore/2 {
+	if c.share() > most+tolerated {
 		c.calm = 0
 		return false
 	}

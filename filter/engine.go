@@ -163,7 +163,7 @@ func (e *engine) train(ctx context.Context, l Learner, v *window.View) (bool, er
 	if len(fit.Scores) != len(v.Rows) {
 		return false, fmt.Errorf("filter: %d scores for %d rows of the window", len(fit.Scores), len(v.Rows))
 	}
-	e.fit = &trained{snapshot: fit.Snapshot, facts: fit.Snapshot.Facts(), view: v, scores: fit.Scores}
+	e.fit = &trained{snapshot: fit.Snapshot, id: fit.Snapshot.ID(), facts: fit.Snapshot.Facts(), view: v, scores: fit.Scores}
 	e.tally.fitted(e.fit)
 	e.breaker.change.fitted(fit.Scores)
 	if e.s.OnSnapshot != nil {

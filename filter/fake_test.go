@@ -111,8 +111,9 @@ func (c *crate) batch(apples []apple) *Batch {
 		once.Do(func() {
 			c.open.Add(-1)
 			for i := range t.Labels {
-				t.Columns[0].Values[i], t.Labels[i], t.Keys[i], times[i] = math.NaN(), 99, 0, 0
+				t.Columns[0].Values[i], t.Labels[i], times[i] = math.NaN(), 99, 0
 			}
+			clear(t.Keys)
 		})
 	}
 	return b
@@ -158,6 +159,7 @@ type meanLearner struct {
 	tables    []*model.Table // fitted on
 	err       map[int]error  // by number of the fit, from 1
 	threshold float64
+	without   string // a class that is never learned
 }
 
 func (l *meanLearner) Fit(ctx context.Context, t *model.Table) (*Fit, error) {
@@ -166,7 +168,7 @@ func (l *meanLearner) Fit(ctx context.Context, t *model.Table) (*Fit, error) {
 	if err := l.err[l.fits]; err != nil {
 		return nil, err
 	}
-	s := &means{at: map[string]float64{}, warm: l.fits > 1, rows: t.Rows(), threshold: l.threshold}
+	s := &means{at: map[string]float64{}, warm: l.fits > 1, rows: t.Rows(), threshold: l.threshold, without: l.without}
 	if s.threshold == 0 {
 		s.threshold = 0.95
 	}
@@ -179,7 +181,7 @@ func (l *meanLearner) Fit(ctx context.Context, t *model.Table) (*Fit, error) {
 	}
 	f := &Fit{Snapshot: s, Scores: make([]model.Score, t.Rows())}
 	for fold := range 5 {
-		part := &means{classes: s.classes, at: map[string]float64{}}
+		part := &means{classes: s.classes, at: map[string]float64{}, without: l.without}
 		part.learn(t, fold)
 		for i := range f.Scores {
 			if int(t.Keys[i]%5) == fold {
@@ -198,14 +200,16 @@ type means struct {
 	warm      bool
 	rows      int
 	threshold float64
+	without   string
 }
 
 // learn takes the means over the rows outside a fold, in table order.
 func (m *means) learn(t *model.Table, fold int) {
 	sum, n := map[string]float64{}, map[string]int{}
 	for i, l := range t.Labels {
-		if l >= 0 && int(t.Keys[i]%5) != fold {
-			sum[t.Classes[l]] += t.Columns[0].Values[i]
+		x := t.Columns[0].Values[i]
+		if l >= 0 && int(t.Keys[i]%5) != fold && !math.IsInf(x, 0) && t.Classes[l] != m.without {
+			sum[t.Classes[l]] += x
 			n[t.Classes[l]]++
 		}
 	}

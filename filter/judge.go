@@ -14,6 +14,7 @@ const chunkRows = 1024
 // trained is a fit with the rows it was made from.
 type trained struct {
 	snapshot Snapshot
+	id       string
 	facts    *model.Facts
 	view     *window.View
 	scores   []model.Score // one a row of view, each by a model that did not see the row's own label

@@ -70,7 +70,7 @@ func (s *Sweep) slidingInput(ctx context.Context, watch *stopwatch, l Learner) (
 	}
 	r := e.report()
 	r.Window.Kind, r.Window.SpanSeconds = "sliding", s.Config.Span.Seconds()
-	r.Window.Sampled = s.Config.Span != window.NoSpan && r.Window.Trained > 0 && e.fit.view.Stands > int64(r.Window.Trained)
+	r.Window.Sampled = e.fit != nil && e.fit.view.Stands > int64(len(e.fit.view.Rows))
 	r.Notes = append(r.Notes, sl.notes()...)
 	return r, nil
 }

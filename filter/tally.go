@@ -88,9 +88,13 @@ func (t *tally) chain(c model.Chain) {
 	t.chains = append(t.chains, Chain{c.Name, c.Tried, c.Won, Number(c.MeanGap)})
 }
 
-// failed takes in a retrain that was not possible after so many rows.
+// failed takes in a retrain that was not possible, after so many rows; 0: with the whole input.
 func (t *tally) failed(rows int64, err error) {
-	if t.retrains.Failed++; t.retrains.Failed == 1 {
+	if t.retrains.Failed++; t.retrains.Failed > 1 {
+		return
+	}
+	t.failure = err.Error()
+	if rows > 0 {
 		t.failure = fmt.Sprintf("after row %d: %v", rows-1, err)
 	}
 }

@@ -57,7 +57,7 @@ func full() *Report {
 func bare() *Report {
 	return &Report{Version: ReportVersion, Mode: "observe", Precision: 0.95, Threshold: notANumber(), Window: WindowUsed{Kind: "whole"},
 		Rows:  Rows{In: 12, Tagged: 12, Verdicts: Verdicts{Unscored: 12}, Reasons: Reasons{WarmingUp: 12}},
-		Notes: []string{"no record could be scored: after row 11: too few labelled rows to learn from"}}
+		Notes: []string{"no record could be scored: too few labelled rows to learn from"}}
 }
 
 // many is a report with more classes and sources than fit.

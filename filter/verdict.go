@@ -17,7 +17,7 @@ func (f *trained) verdict(s *model.Score) Tag {
 	if s.Reason != model.Scored {
 		return unscored(s.Reason)
 	}
-	t := Tag{Score: s.P, Margin: s.Margin, Snapshot: f.snapshot.ID(), Verdict: Pass}
+	t := Tag{Score: s.P, Margin: s.Margin, Snapshot: f.id, Verdict: Pass}
 	if s.Implied >= 0 {
 		t.Implied = f.facts.Classes[s.Implied]
 	}
