@@ -15,6 +15,9 @@ func (m *messages) check(root fbTable, body int64) error {
 		return errors.New("message without a header")
 	case kind == headerRecord:
 		m.batch++
+	case kind == headerSchema:
+		left := mostFields
+		return fieldsFit(rec, 1, 0, &left)
 	case kind != headerDictionary:
 		return nil
 	}
@@ -35,6 +38,42 @@ func (m *messages) check(root fbTable, body int64) error {
 	return nil
 }
 
+// A schema has at most so many fields, nested so deep: arrow/go reads 64 levels.
+const (
+	mostFields = 1 << 20
+	mostDepth  = 64
+)
+
+// fieldsFit looks at the lengths of a schema's or field's lists, for arrow allocates as much as they say. Slot has the
+// children; the metadata follows it. left counts down the fields that may still come.
+func fieldsFit(t fbTable, slot, depth int, left *int) error {
+	if depth > mostDepth {
+		return errors.New("fields are nested too deep")
+	}
+	for _, list := range []int{slot, slot + 1} {
+		if err := t.listFits(list, 4); err != nil {
+			return err
+		}
+	}
+	pos, n := t.vector(slot)
+	if *left -= n; *left < 0 {
+		return errors.New("too many fields")
+	}
+	for i := range n {
+		p := pos + 4*i
+		f := fbTable{t.b, p + int(binary.LittleEndian.Uint32(t.b[p:]))}
+		if dt, ok := f.table(3); ok && f.byte(2, 0) == typeUnion {
+			if err := dt.listFits(1, 4); err != nil {
+				return err
+			}
+		}
+		if err := fieldsFit(f, 5, depth+1, left); err != nil {
+			return err
+		}
+	}
+	return nil
+}
+
 // batchTable is the RecordBatch table of a record or dictionary message.
 func batchTable(root fbTable) (fbTable, bool) {
 	t, ok := root.table(2)
@@ -42,34 +81,6 @@ func batchTable(root fbTable) (fbTable, bool) {
 		t, ok = t.table(1)
 	}
 	return t, ok
-}
-
-// unpackedSizes looks at what compressed buffers say of their size, for arrow allocates that much.
-func unpackedSizes(root fbTable, body []byte) error {
-	const most = 1 << 31
-	kind := root.byte(1, 0)
-	rec, ok := batchTable(root)
-	if !ok || (kind != headerRecord && kind != headerDictionary) {
-		return nil
-	}
-	if _, packed := rec.table(3); !packed {
-		return nil
-	}
-	pos, n := rec.vector(2)
-	for i := range n {
-		at := rec.b[pos+16*i:]
-		off, size := binary.LittleEndian.Uint64(at), binary.LittleEndian.Uint64(at[8:])
-		if size == 0 {
-			continue
-		}
-		if size < 8 {
-			return fmt.Errorf("compressed buffer of %d bytes", size)
-		}
-		if u := int64(binary.LittleEndian.Uint64(body[off:])); u < -1 || u > most {
-			return fmt.Errorf("compressed buffer of %d bytes unpacks to %d", size, u)
-		}
-	}
-	return nil
 }
 
 // firstCodec is how the first record batch is compressed, which stands for all. It reads message headers only and does

@@ -1,6 +1,9 @@
 package arrowfile
 
-import "encoding/binary"
+import (
+	"encoding/binary"
+	"fmt"
+)
 
 // The few FlatBuffers tables of the Arrow format that arrow/go keeps to itself are read by hand (message header and
 // compression, file footer), after https://arrow.apache.org/docs/format/Columnar.html and its Message.fbs and File.fbs.
@@ -12,6 +15,9 @@ const (
 	headerDictionary = 2
 	headerRecord     = 3
 )
+
+// typeUnion is the number of the union type, from Schema.fbs.
+const typeUnion = 14
 
 // fbTable is a table at a position of a FlatBuffers buffer.
 type fbTable struct {
@@ -69,7 +75,15 @@ func (t fbTable) vector(i int) (pos, n int) {
 	return p + 4, int(binary.LittleEndian.Uint32(t.b[p:]))
 }
 
-// strings are the key and value of the KeyValue tables in slot i.
+// listFits tells whether the elements of the vector in slot i are within the buffer.
+func (t fbTable) listFits(i, width int) error {
+	if pos, n := t.vector(i); n > (len(t.b)-pos)/width {
+		return fmt.Errorf("list of %d elements in a message of %d bytes", n, len(t.b))
+	}
+	return nil
+}
+
+// keyValues are the key and value of the KeyValue tables in slot i.
 func (t fbTable) keyValues(i int) (keys, values []string) {
 	pos, n := t.vector(i)
 	for k := range n {

@@ -44,13 +44,14 @@ func openInput(path string, opt Options) (in *input, err error) {
 		return nil, &Error{Path: path, What: "is empty: zero bytes", Do: "check the step that wrote it", Kind: ErrUnreadable}
 	}
 	in = &input{path: path, file: f}
-	if in.msgs, err = newMessages(f, info.Size(), opt.mem); err != nil {
+	mem := capped{opt.mem, mostBytes(info.Size())}
+	if in.msgs, err = newMessages(f, info.Size(), mem); err != nil {
 		if errors.Is(err, errNotArrow) {
 			return nil, &Error{Path: path, What: "is neither an Arrow IPC file nor an Arrow IPC stream", Do: otherFormat(path), Kind: ErrUnreadable}
 		}
 		return nil, in.damaged("its layout can't be read", err)
 	}
-	if in.rd, err = ipc.NewReaderFromMessageReader(in.msgs, ipc.WithAllocator(opt.mem)); err != nil {
+	if in.rd, err = ipc.NewReaderFromMessageReader(in.msgs, ipc.WithAllocator(mem)); err != nil {
 		in.msgs.Release()
 		return nil, in.damaged("its schema can't be read", err)
 	}

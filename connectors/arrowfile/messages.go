@@ -176,9 +176,6 @@ func (m *messages) Message() (*ipc.Message, error) {
 	if _, err := m.r.ReadAt(body.Bytes(), next); err != nil && n > 0 {
 		return nil, fmt.Errorf("message body at byte %d: %w", next, err)
 	}
-	if err := unpackedSizes(root, body.Bytes()); err != nil {
-		return nil, err
-	}
 	m.Release()
 	m.pos, m.seen = next+n, next+n
 	head := memory.NewBufferBytes(meta)

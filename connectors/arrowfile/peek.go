@@ -21,13 +21,18 @@ type habit struct {
 
 // peek reads the first rows of an input, as many as asked for, and closes it. The answer depends on the rows alone,
 // not on how they are cut into record batches.
-func peek(path string, opt Options) ([]habit, error) {
+func peek(path string, opt Options) (habits []habit, err error) {
 	in, err := openInput(path, opt)
 	if err != nil {
 		return nil, err
 	}
 	defer in.close()
-	habits := make([]habit, in.rd.Schema().NumFields())
+	defer func() {
+		if p := recover(); p != nil {
+			habits, err = nil, in.damaged("its values can't be read", caught(p))
+		}
+	}()
+	habits = make([]habit, in.rd.Schema().NumFields())
 	for i := range habits {
 		habits[i] = habit{counting: true, text: true, names: newCoder()}
 	}

@@ -25,7 +25,7 @@ func (in *input) validate(rec arrow.Record) error {
 
 func (in *input) validateData(d arrow.ArrayData) error {
 	n := d.Len()
-	if n < 0 || d.NullN() > n {
+	if n < 0 || n > 1<<40 || d.NullN() > n {
 		return fmt.Errorf("%d nulls in %d rows", d.NullN(), n)
 	}
 	bufs := d.Buffers()
@@ -62,7 +62,7 @@ func (in *input) validateType(dt arrow.DataType, d arrow.ArrayData) error {
 	case *arrow.LargeListType:
 		return offsetsFit[int64](d, d.Children()[0].Len())
 	case *arrow.FixedSizeListType:
-		if c := d.Children()[0]; c.Len() < (d.Offset()+d.Len())*int(dt.Len()) {
+		if c := d.Children()[0]; float64(c.Len()) < float64(d.Offset()+d.Len())*float64(dt.Len()) || c.Len() > 1<<40 {
 			return fmt.Errorf("%d elements for %d lists of %d", c.Len(), d.Len(), dt.Len())
 		}
 	case *arrow.StructType:
@@ -92,6 +92,9 @@ func bufLen(d arrow.ArrayData, i int) int {
 
 // wide tells whether the values of a type of so many bits have room in their buffer.
 func wide(d arrow.ArrayData, bits int) error {
+	if bits < 0 {
+		return fmt.Errorf("values of %d bits", bits)
+	}
 	if have := bufLen(d, 1); d.Len() > 0 && have*8 < (d.Offset()+d.Len())*bits {
 		return fmt.Errorf("%d bytes for %d values of %d bits", have, d.Len(), bits)
 	}
