@@ -10,6 +10,7 @@ import (
 	"path/filepath"
 	"strconv"
 
+	"labelweir/connectors/arrowfile"
 	"labelweir/filter"
 	"labelweir/filter/cmd/labelweir/internal/sweep"
 	"labelweir/filter/config"
@@ -31,23 +32,13 @@ func DefaultOptions() Options { return Options{Rows: 8000, Seed: 1} }
 // Run grows a harvest, sweeps it, and writes to out what was planted and found. The files it keeps are line.arrow and
 // planted.arrow, and passed.arrow, held.arrow, report.json and last.weir from the sweep; none of them may exist.
 func Run(ctx context.Context, o Options, out io.Writer, w sweep.Watch) (*Outcome, error) {
-	dir := o.Dir
-	if dir == "" {
-		temp, err := os.MkdirTemp("", "labelweir-demo-")
-		if err != nil {
-			return nil, fmt.Errorf("no temporary folder: %w; set TMPDIR, or give --out DIR", err)
-		}
-		defer os.RemoveAll(temp)
-		dir = temp
-	} else if err := os.MkdirAll(dir, 0o777); err != nil {
+	dir, done, err := folder(o.Dir)
+	if err != nil {
 		return nil, err
 	}
+	defer done()
 	h := Grow(o.Rows, o.Seed)
-	line := filepath.Join(dir, "line.arrow")
-	if err := errors.Join(h.WriteLine(line), h.WritePlanted(filepath.Join(dir, "planted.arrow"))); err != nil {
-		if errors.Is(err, fs.ErrExist) {
-			return nil, fmt.Errorf("%s: files of an earlier demo are there; name another folder", dir)
-		}
+	if err := h.write(dir); err != nil {
 		return nil, err
 	}
 	introduce(out, h)
@@ -70,6 +61,51 @@ func Run(ctx context.Context, o Options, out io.Writer, w sweep.Watch) (*Outcome
 	outcome := compare(h, f)
 	fmt.Fprintln(out)
 	return outcome, outcome.WriteText(out)
+}
+
+// folder gives the folder to work in, and what to call when it has served.
+func folder(wanted string) (dir string, done func(), err error) {
+	if wanted == "" {
+		dir, err := os.MkdirTemp("", "labelweir-demo-")
+		if err != nil {
+			return "", nil, &arrowfile.Error{Path: os.TempDir(), What: "no temporary folder can be made in it",
+				Do: "set TMPDIR, or give --out DIR", Kind: arrowfile.ErrTarget, Err: bare(err)}
+		}
+		return dir, func() { os.RemoveAll(dir) }, nil
+	}
+	if err := os.MkdirAll(wanted, 0o777); err != nil {
+		return "", nil, &arrowfile.Error{Path: wanted, What: "the folder can't be made", Do: "name another one",
+			Kind: arrowfile.ErrTarget, Err: bare(err)}
+	}
+	return wanted, func() {}, nil
+}
+
+// write puts what the line recorded and the truth into the folder.
+func (h *Harvest) write(dir string) error {
+	for _, file := range []struct {
+		name  string
+		write func(path string) error
+	}{{"line.arrow", h.WriteLine}, {"planted.arrow", h.WritePlanted}} {
+		path := filepath.Join(dir, file.name)
+		err := file.write(path)
+		switch {
+		case errors.Is(err, fs.ErrExist):
+			return &arrowfile.Error{Path: path, What: "is there from an earlier demo", Do: "name another folder", Kind: arrowfile.ErrTarget}
+		case err != nil:
+			return &arrowfile.Error{Path: path, What: "can't be written", Do: "name a folder with room that can be written to",
+				Kind: arrowfile.ErrWrite, Err: bare(err)}
+		}
+	}
+	return nil
+}
+
+// bare takes the path off an error, where the message names it already.
+func bare(err error) error {
+	var p *fs.PathError
+	if errors.As(err, &p) {
+		return p.Err
+	}
+	return err
 }
 
 // settings gives those of the sweep, and the same as a command line.
