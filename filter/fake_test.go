@@ -11,7 +11,6 @@ import (
 	"slices"
 	"sync"
 	"sync/atomic"
-	"testing"
 	"time"
 
 	"labelweir/model"
@@ -162,6 +161,14 @@ type meanLearner struct {
 	without   string // a class that is never learned
 }
 
+// fail has the numbered fits fail for want of rows.
+func (l *meanLearner) fail(fits []int) {
+	l.err = map[int]error{}
+	for _, k := range fits {
+		l.err[k] = model.ErrOneClass
+	}
+}
+
 func (l *meanLearner) Fit(ctx context.Context, t *model.Table) (*Fit, error) {
 	l.fits++
 	l.tables = append(l.tables, t)
@@ -296,6 +303,14 @@ type run struct {
 	report *Report
 }
 
+// check is what the helpers need of a test; rapid's has it, too.
+type check interface {
+	Helper()
+	Errorf(format string, args ...any)
+	Fatalf(format string, args ...any)
+	Fatal(args ...any)
+}
+
 // newRun sets one up: batches of 100, two workers, a clock that stands still.
 func newRun(apples []apple, change func(*Config)) *run {
 	r := &run{store: &store{}, learn: &meanLearner{}}
@@ -311,7 +326,7 @@ func newRun(apples []apple, change func(*Config)) *run {
 }
 
 // do runs it, and fails the test on an error or when anything was not given back.
-func (r *run) do(t testing.TB) *run {
+func (r *run) do(t check) *run {
 	t.Helper()
 	report, err := r.sweep.Run(context.Background())
 	if err != nil {

@@ -14,7 +14,7 @@ import (
 )
 
 // outcome is what a sweep leaves, as text: every tag in order, and the report.
-func (r *run) outcome(t testing.TB) string {
+func (r *run) outcome(t check) string {
 	t.Helper()
 	var b strings.Builder
 	for i, tag := range r.store.tags {
@@ -65,7 +65,7 @@ func TestNothingIsLostOrDoubled(t *testing.T) {
 }
 
 // checkMeters counts the delivered tags itself and compares.
-func checkMeters(t *testing.T, r *run) {
+func checkMeters(t check, r *run) {
 	t.Helper()
 	var want Rows
 	for _, tag := range r.store.tags {

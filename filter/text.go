@@ -176,7 +176,7 @@ func (p *page) training(r *Report) {
 	}
 	p.fact("window", window)
 	if c := r.Choice; c != nil {
-		p.fact("encoder", shown(c.Encoder))
+		p.fact("encoder", c.Encoder)
 		p.fact("loss", fmt.Sprintf("q = %s, lambda = %s", number(c.Q), number(c.Lambda)))
 		var members []string
 		for _, m := range c.Members {
