@@ -83,7 +83,7 @@ func TestAnnealerFindsTheProvenOptimum(t *testing.T) {
 	for k := range instances {
 		rng := newRand(uint64(1000 + k))
 		most := 16
-		if k%20 == 0 {
+		if k%50 == 0 {
 			most = 20
 		}
 		p, b := small(rng, most)

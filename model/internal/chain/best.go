@@ -11,13 +11,46 @@ func (s *Scratch) collapsed() bool {
 	return s.kept[0] < collapseBelow || s.kept[1] < collapseBelow
 }
 
-// remember makes the last measured point, whose objective is j, the best one.
-func (s *Scratch) remember(j float64) {
-	s.best.j, s.best.collapsed, s.best.at = j, s.collapsed(), s.at
-	copy(s.best.w, s.w)
-	copy(s.best.alpha, s.alpha)
-	copy(s.best.keep, s.keep)
+// mark is a point of a run that it can return to.
+type mark struct {
+	j         float64
+	collapsed bool
+	at        int // its w's name
+
+	w     []float64
+	alpha []float64
+	keep  []bool
 }
+
+// note puts the last measured point, whose objective is j, in m.
+func (s *Scratch) note(m *mark, j float64) {
+	m.w, m.alpha, m.keep = resize(m.w, len(s.w)), resize(m.alpha, s.n), resize(m.keep, s.n)
+	m.j, m.collapsed, m.at = j, s.collapsed(), s.at
+	copy(m.w, s.w)
+	copy(m.alpha, s.alpha)
+	copy(m.keep, s.keep)
+}
+
+// take makes m the point that o is.
+func (m *mark) take(o *mark) {
+	m.j, m.collapsed, m.at = o.j, o.collapsed, o.at
+	copy(m.w, o.w)
+	copy(m.alpha, o.alpha)
+	copy(m.keep, o.keep)
+}
+
+// jump goes to m.
+func (s *Scratch) jump(m *mark) {
+	if s.at != m.at {
+		s.at = m.at
+		copy(s.w, m.w)
+	}
+	copy(s.alpha, m.alpha)
+	copy(s.keep, m.keep)
+}
+
+// remember makes the last measured point, whose objective is j, the best one.
+func (s *Scratch) remember(j float64) { s.note(&s.best, j) }
 
 // consider remembers the last measured point if it is better than the best: one that has not collapsed is better than
 // one that has, and among like points the lower J is.
@@ -29,14 +62,7 @@ func (s *Scratch) consider(j float64) {
 }
 
 // recall goes back to the best point.
-func (s *Scratch) recall() {
-	if s.at != s.best.at {
-		s.at = s.best.at
-		copy(s.w, s.best.w)
-	}
-	copy(s.alpha, s.best.alpha)
-	copy(s.keep, s.best.keep)
-}
+func (s *Scratch) recall() { s.jump(&s.best) }
 
 // end is the best point as a state.
 func (s *Scratch) end(q float64, status Status) State {

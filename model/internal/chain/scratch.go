@@ -39,19 +39,10 @@ type Scratch struct {
 	kept  [2]float64 // share of the weight of class −1 and +1 above q, as of the last measure
 	stray bool       // the last cycle ended elsewhere than at its best point
 	best  mark       // best point met at the present q
+	here  mark       // where a shaken run stands
+	top   mark       // the lowest point of a shaken run
 
 	lattice lattice // of annealed runs
-}
-
-// mark is a point of a run that it can return to.
-type mark struct {
-	j         float64
-	collapsed bool
-	at        int // its w's name
-
-	w     []float64
-	alpha []float64
-	keep  []bool
 }
 
 // resize gives s length n without keeping its contents.
@@ -92,7 +83,6 @@ func (s *Scratch) load(p *Problem, rng *rand.Rand) {
 		s.pack(p, i, int(k))
 	}
 	s.hold = s.holdFor()
-	s.best.w, s.best.alpha, s.best.keep = resize(s.best.w, len(s.w)), resize(s.best.alpha, n), resize(s.best.keep, n)
 	s.reset()
 }
 
