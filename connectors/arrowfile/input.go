@@ -45,7 +45,7 @@ func openInput(path string, opt Options) (in *input, err error) {
 	}
 	in = &input{path: path, file: f}
 	mem := capped{opt.mem, mostBytes(info.Size())}
-	if in.msgs, err = newMessages(f, info.Size(), mem); err != nil {
+	if in.msgs, err = newMessages(f, info.Size()); err != nil {
 		if errors.Is(err, errNotArrow) {
 			return nil, &Error{Path: path, What: "is neither an Arrow IPC file nor an Arrow IPC stream", Do: otherFormat(path), Kind: ErrUnreadable}
 		}

@@ -44,7 +44,6 @@ type block struct{ off, meta, body int64 }
 type messages struct {
 	r      io.ReaderAt
 	size   int64
-	mem    memory.Allocator
 	format Format
 	recs   []block  // file: all record batches
 	footer []string // keys and values of the footer's own metadata, in turn
@@ -52,21 +51,22 @@ type messages struct {
 	pos    int64   // stream: where the next message begins
 	blocks []block // file: what is still to come
 	last   *ipc.Message
-	seen   int64 // byte behind the last message read
-	batch  int   // record batches handed out
-	at     int   // record batch being read, counted from 1
+	body   []byte // of the last message
+	seen   int64  // byte behind the last message read
+	batch  int    // record batches handed out
+	at     int    // record batch being read, counted from 1
 }
 
 var errNotArrow = errors.New("not Arrow IPC")
 
 // newMessages finds out the format and, for a file, reads the footer.
-func newMessages(r io.ReaderAt, size int64, mem memory.Allocator) (m *messages, err error) {
+func newMessages(r io.ReaderAt, size int64) (m *messages, err error) {
 	defer func() {
 		if p := recover(); p != nil {
 			err = caught(p)
 		}
 	}()
-	m = &messages{r: r, size: size, mem: mem}
+	m = &messages{r: r, size: size}
 	head := make([]byte, 8)
 	n, err := r.ReadAt(head, 0)
 	if err != nil && err != io.EOF {
@@ -170,17 +170,29 @@ func (m *messages) Message() (*ipc.Message, error) {
 	if err := m.check(root, n); err != nil {
 		return nil, err
 	}
-	body := memory.NewResizableBuffer(m.mem)
-	defer body.Release()
-	body.Resize(int(n))
-	if _, err := m.r.ReadAt(body.Bytes(), next); err != nil && n > 0 {
-		return nil, fmt.Errorf("message body at byte %d: %w", next, err)
+	if err := m.readBody(next, int(n)); err != nil {
+		return nil, err
 	}
 	m.Release()
 	m.pos, m.seen = next+n, next+n
 	head := memory.NewBufferBytes(meta)
-	m.last = ipc.NewMessage(head, body)
+	m.last = ipc.NewMessage(head, memory.NewBufferBytes(m.body))
 	return m.last, nil
+}
+
+// readBody reads a message body into memory that serves all messages: arrow copies what it needs.
+func (m *messages) readBody(off int64, n int) error {
+	if cap(m.body) < n {
+		m.body = make([]byte, n)
+	}
+	m.body = m.body[:n]
+	if n == 0 {
+		return nil
+	}
+	if _, err := m.r.ReadAt(m.body, off); err != nil {
+		return fmt.Errorf("message body at byte %d: %w", off, err)
+	}
+	return nil
 }
 
 // readMeta reads the metadata of the message at off; next is where its body begins.

@@ -3,6 +3,7 @@ package arrowfile
 import (
 	"fmt"
 	"math"
+	"slices"
 
 	"github.com/apache/arrow/go/v16/arrow"
 	"github.com/apache/arrow/go/v16/arrow/array"
@@ -78,8 +79,10 @@ func appendNumbers(dst []float64, arr arrow.Array) ([]float64, error) {
 }
 
 func widen[T int8 | int16 | int32 | int64 | uint8 | uint16 | uint32 | uint64 | float32 | arrow.Duration](dst []float64, src []T) []float64 {
-	for _, v := range src {
-		dst = append(dst, float64(v))
+	n := len(dst)
+	dst = slices.Grow(dst, len(src))[:n+len(src)]
+	for i, v := range src {
+		dst[n+i] = float64(v)
 	}
 	return dst
 }

@@ -46,28 +46,16 @@ func newOutput(t *target, src *Source, schema *arrow.Schema, opt Options) *outpu
 	return o
 }
 
-// run is rows lo ≤ i < hi of a batch.
-type run struct{ lo, hi int64 }
-
 // add takes the given runs of rec with their tags.
 func (o *output) add(rec arrow.Record, runs []run, tags []filter.Tag) error {
 	if len(runs) == 0 {
 		return nil
 	}
-	parts := make([]arrow.Record, len(runs))
-	for i, r := range runs {
-		parts[i] = rec.NewSlice(r.lo, r.hi)
-	}
-	defer func() {
-		for _, p := range parts {
-			p.Release()
-		}
-	}()
-	if len(parts) == 1 && parts[0].NumRows() == rec.NumRows() {
-		return o.addPiece(parts[0], tags)
+	if len(runs) == 1 && runs[0].hi-runs[0].lo == rec.NumRows() {
+		return o.addPiece(rec, tags)
 	}
 	// A few rows must not hold all of their record batch in memory, so they are copied.
-	piece, err := gather(parts, o.opt.mem)
+	piece, err := pick(rec, runs, o.opt.mem)
 	if err != nil {
 		return err
 	}
@@ -91,6 +79,9 @@ func (o *output) addPiece(piece arrow.Record, tags []filter.Tag) error {
 			n = 0 // the block is full
 		}
 		if n > 0 {
+			if o.rows == 0 {
+				o.tags.reserve(int(o.opt.blockRows)) // all at once: lengths of bitmaps written depend on the room there is
+			}
 			o.keep(rest.NewSlice(0, n))
 			for i := range n {
 				o.tags.add(&tags[at+i])

@@ -74,25 +74,32 @@ func texts(mem memory.Allocator, names []string) arrow.Array {
 	return b.NewArray()
 }
 
-// add appends one row.
+// reserve makes room for more rows.
+func (t *tagColumns) reserve(n int) {
+	for _, b := range []array.Builder{t.score, t.margin, t.verdict, t.reason, t.implied, t.snapshot} {
+		b.Reserve(n)
+	}
+}
+
+// add appends one row, for which there must be room.
 func (t *tagColumns) add(tag *filter.Tag) {
 	number(t.score, tag.Score)
 	number(t.margin, tag.Margin)
-	t.verdict.Append(int8(tag.Verdict))
+	t.verdict.UnsafeAppend(int8(tag.Verdict))
 	text(t.implied, tag.Implied, tag.Verdict != filter.Unscored)
 	text(t.snapshot, tag.Snapshot, tag.Snapshot != "")
 	if tag.Reason == model.Scored {
-		t.reason.AppendNull()
+		t.reason.UnsafeAppendBoolToBitmap(false)
 	} else {
-		t.reason.Append(int8(tag.Reason - model.NoLabel))
+		t.reason.UnsafeAppend(int8(tag.Reason - model.NoLabel))
 	}
 }
 
 func number(b *array.Float64Builder, v float64) {
 	if math.IsNaN(v) {
-		b.AppendNull()
+		b.UnsafeAppendBoolToBitmap(false)
 	} else {
-		b.Append(v)
+		b.UnsafeAppend(v)
 	}
 }
 
