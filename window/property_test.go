@@ -3,6 +3,7 @@ package window
 import (
 	"bytes"
 	"fmt"
+	"math/rand/v2"
 	"testing"
 	"time"
 
@@ -19,9 +20,9 @@ type machine struct {
 
 func (m *machine) append(t *rapid.T) {
 	n := rapid.IntRange(0, 120).Draw(t, "rows")
-	kinds := rapid.SliceOfN(rapid.IntRange(0, 39), n, n).Draw(t, "kinds")
+	rng := rand.New(rand.NewPCG(rapid.Uint64().Draw(t, "seed"), 11))
 	table, first := m.line.table(n, func(i int) string {
-		switch k := kinds[i]; {
+		switch k := rng.IntN(40); {
 		case k == 0:
 			return ""
 		case k < 3:
@@ -32,8 +33,8 @@ func (m *machine) append(t *rapid.T) {
 	})
 	times := make([]int64, n)
 	for i := range times {
-		m.clock += int64(rapid.IntRange(0, 2).Draw(t, "step")) * minute
-		switch back := rapid.IntRange(0, 30).Draw(t, "back"); back {
+		m.clock += int64(rng.IntN(3)) * minute
+		switch back := rng.IntN(31); back {
 		case 0:
 			times[i] = unknown
 		case 1:
@@ -114,6 +115,9 @@ func TestWindowAgreesWithASlice(t *testing.T) {
 		{"span within bytes", Policy{Records: 500, Span: 5000 * time.Minute, Bytes: tight, Keep: Uniform, Floor: 9, Seed: 4}},
 		{"one row", Policy{Records: 1, Span: 100 * time.Minute, Bytes: tight, Keep: Uniform, Floor: 9, Seed: 4}},
 	} {
+		if raceDetector && c.p.Span == NoSpan { // one goroutine: it has nothing to find here, and the rest is enough
+			continue
+		}
 		t.Run(c.name, func(t *testing.T) {
 			rapid.Check(t, func(t *rapid.T) {
 				w, err := New(c.p)

@@ -50,7 +50,7 @@ func add(t testing.TB, w *Window, first int64, n, rare int, step time.Duration) 
 // Every row of the span has the same chance to be in the sample, whatever its age: over many seeds the counts by age
 // fit a uniform distribution (Pearson's chi-square against gonum's distribution, at 1 in 10,000).
 func TestSampleIsUniformOverTheSpan(t *testing.T) {
-	const records, span, rows, parts, seeds = 50, 1000, 5000, 20, 400
+	const records, span, rows, parts, seeds = 50, 1000, 3000, 20, 400
 	for _, limit := range []int64{1 << 20, 60 * 200} { // the second is too few bytes for the rows that may come in yet
 		count := make([]float64, parts)
 		total := 0.0

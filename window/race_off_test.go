@@ -1,0 +1,6 @@
+//go:build !race
+
+package window
+
+// raceDetector tells that the race detector is off.
+const raceDetector = false
