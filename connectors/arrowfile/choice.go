@@ -70,7 +70,7 @@ func judge(f arrow.Field, h habit) (model.Kind, string) {
 		return 0, why
 	}
 	switch {
-	case strings.HasPrefix(f.Name, "weir_"):
+	case isTag(f.Name):
 		return 0, "a tag of an earlier run"
 	case h.rows > 0 && h.valid == 0:
 		return kind, "all values missing in the first rows"

@@ -118,6 +118,7 @@ func (in *input) next() (rec arrow.Record, err error) {
 // close gives everything back but the record batches handed out.
 func (in *input) close() error {
 	in.rd.Release()
+	in.msgs.body = nil
 	return in.file.Close()
 }
 

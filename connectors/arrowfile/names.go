@@ -1,9 +1,11 @@
 package arrowfile
 
 import (
+	"errors"
 	"fmt"
 	"math"
 	"strconv"
+	"unicode/utf8"
 
 	"github.com/apache/arrow/go/v16/arrow"
 	"github.com/apache/arrow/go/v16/arrow/array"
@@ -132,6 +134,8 @@ func (f fractional) Error() string {
 	return fmt.Sprintf("%v is not a whole number, so it can't name a class or level", float64(f))
 }
 
+var errNotText = errors.New("the bytes are not UTF-8 text")
+
 // coder gives each name a code by first appearance, row by row, whatever the record batches and dictionaries are.
 type coder struct {
 	names []string // only grows
@@ -183,6 +187,9 @@ func (c *coder) code(name namer, i int) (int32, error) {
 	}
 	if code, ok := c.codes[string(b)]; ok {
 		return code, nil
+	}
+	if !utf8.Valid(b) {
+		return missing, errNotText
 	}
 	code := int32(len(c.names))
 	s := string(b)

@@ -21,7 +21,8 @@ const (
 // output is one file being written: rows gather in pieces until they make a record batch.
 type output struct {
 	target *target
-	src    *Source
+	format Format
+	footer []string // metadata
 	schema *arrow.Schema
 	opt    Options
 	codec  Codec
@@ -41,7 +42,7 @@ var errBlurredDictionary = errors.New("a dictionary of floating-point numbers is
 	"which can't be written; decode the column before sweeping")
 
 func newOutput(t *target, src *Source, schema *arrow.Schema, opt Options) *output {
-	o := &output{target: t, src: src, schema: schema, opt: opt, codec: src.codec(), tags: newTagColumns(opt.mem)}
+	o := &output{target: t, schema: schema, opt: opt, format: src.Format(), footer: src.in.msgs.footer, codec: src.codec(), tags: newTagColumns(opt.mem)}
 	o.buf = bufio.NewWriterSize(t.file, 1<<18)
 	return o
 }
@@ -165,7 +166,6 @@ func (o *output) forget() {
 // writer makes arrow's writer at first use.
 func (o *output) writer() *ipc.Writer {
 	if o.wr == nil {
-		msgs := o.src.in.msgs
 		opts := []ipc.Option{ipc.WithSchema(o.schema), ipc.WithAllocator(o.opt.mem)}
 		switch o.codec {
 		case LZ4:
@@ -173,7 +173,7 @@ func (o *output) writer() *ipc.Writer {
 		case Zstd:
 			opts = append(opts, ipc.WithZstd())
 		}
-		o.wr = ipc.NewWriterWithPayloadWriter(&payloads{w: o.buf, format: msgs.format, meta: msgs.footer}, opts...)
+		o.wr = ipc.NewWriterWithPayloadWriter(&payloads{w: o.buf, format: o.format, meta: o.footer}, opts...)
 	}
 	return o.wr
 }

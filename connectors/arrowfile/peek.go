@@ -2,7 +2,6 @@ package arrowfile
 
 import (
 	"io"
-	"unicode/utf8"
 
 	"github.com/apache/arrow/go/v16/arrow"
 )
@@ -86,10 +85,7 @@ func (h *habit) watchNames(arr arrow.Array) {
 		return
 	}
 	if _, _, err := h.names.append(nil, arr); err != nil {
-		return
-	}
-	for _, s := range h.names.names[h.distinct:] {
-		h.text = h.text && utf8.ValidString(s)
+		h.text = false
 	}
 	h.distinct = len(h.names.names)
 }

@@ -38,7 +38,8 @@ const (
 	sinkClosed
 )
 
-// Create starts writing out what was read from src, or from another Source of the same file. Nothing stands under the
+// Create starts writing out what was read from src, or from another Source of the same file; src may be closed before
+// the sink. Nothing stands under the
 // final names before Commit. Errors wrap ErrTarget, or ErrColumn when the input has tag columns already.
 func Create(out OutputPaths, src *Source, opt Options) (*Sink, error) {
 	return create(disk.OS{}, out, src, opt)

@@ -257,6 +257,10 @@ func (s *Source) valueError(index, i int, err error) error {
 		e.What, e.Do = f.Error(), "convert the column to text, integers or a dictionary, or cut it into ranges"
 		return e
 	}
+	if errors.Is(err, errNotText) {
+		e.What, e.Do = err.Error(), "convert the column to text first"
+		return e
+	}
 	e.What, e.Err = "the value can't be read", err
 	return e
 }
