@@ -58,7 +58,7 @@ func expected(apples []apple, c Config, keeps int, fail map[int]bool) []string {
 	out := make([]string, len(apples))
 	var kept []int // labelled rows in the window
 	inFit := map[int]bool{}
-	fits, newest, labelled, next, due := 0, -1, 0, 0, -1
+	fits, newest, labelled, next, due, tried := 0, -1, 0, 0, -1, -1
 	decide := func(upto int) {
 		for ; next <= upto; next++ {
 			switch {
@@ -99,6 +99,7 @@ func expected(apples []apple, c Config, keeps int, fail map[int]bool) []string {
 		if due < 0 && labelled == min(c.Records, max(500, c.Records/10)) || n+1 == due {
 			first := newest < 0
 			train()
+			tried = n
 			due = n + 1 + c.Retrain.Rows
 			if c.Retrain.Rows == 0 {
 				due = n + 1 + int(c.Retrain.Share*float64(c.Records)+0.5)
@@ -108,7 +109,7 @@ func expected(apples []apple, c Config, keeps int, fail map[int]bool) []string {
 			}
 		}
 	}
-	if newest < 0 && labelled > 0 {
+	if newest < 0 && labelled > 0 && tried < len(apples)-1 {
 		train()
 	}
 	decide(len(apples) - 1)
@@ -138,6 +139,7 @@ func TestRowsAreJudgedWhenTheirTimeHasCome(t *testing.T) {
 		{"a small window", 3000, func(c *Config) { c.Records = 100; c.Hold = 7 }, nil, 0},
 		{"the first fits fail", 3000, func(c *Config) {}, map[int]bool{0: true, 1: true}, 0},
 		{"all fits fail", 2000, func(c *Config) { c.Retrain = Every{Rows: 500} }, map[int]bool{0: true, 1: true, 2: true, 3: true, 4: true}, 0},
+		{"the last fit at the very end fails", 542, func(c *Config) {}, map[int]bool{0: true}, 0},
 		{"a later fit fails", 3000, func(c *Config) { c.Hold = 60 }, map[int]bool{3: true, 4: true}, 0},
 	} {
 		t.Run(c.name, func(t *testing.T) {

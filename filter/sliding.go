@@ -26,6 +26,7 @@ type slide struct {
 	firstFit int64 // labelled rows at which the first retrain is due
 	labelled int64 // rows so far that have a label
 	due      int64 // row count at which the next retrain is due; 0: not known yet
+	tried    int64 // row count at the last retrain, possible or not
 	waiting  int64 // most rows that may wait; 0: not known yet
 }
 
@@ -96,7 +97,7 @@ func (s *slide) run(ctx context.Context, in *readAhead) error {
 	if in.err != nil {
 		return in.err
 	}
-	if s.fit == nil && s.labelled > 0 {
+	if s.fit == nil && s.labelled > 0 && s.tried < s.read {
 		if _, err := s.retrain(ctx); err != nil {
 			return err
 		}
@@ -207,6 +208,7 @@ func (s *slide) retrain(ctx context.Context) (bool, error) {
 		s.breaker.settled(s.read - 1)
 	}
 	c.next()
+	s.tried = s.read
 	return s.train(ctx, s.learner, s.win.View())
 }
 
