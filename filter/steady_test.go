@@ -15,6 +15,9 @@ import (
 // TestMain counts the goroutines once all tests are done: whoever starts one waits for it.
 func TestMain(m *testing.M) {
 	code := m.Run()
+	for end := time.Now().Add(5 * time.Second); runtime.NumGoroutine() > 1 && time.Now().Before(end); {
+		runtime.Gosched() // the last test's own goroutine may be about to end
+	}
 	if n := runtime.NumGoroutine(); n > 1 && code == 0 {
 		buf := make([]byte, 1<<16)
 		fmt.Printf("%d goroutines are left:\n%s\n", n, buf[:runtime.Stack(buf, true)])
