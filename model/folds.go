@@ -12,8 +12,7 @@ import (
 
 // The grid that a cold search covers.
 var (
-	gridLambda = [...]float64{1e-3, 3e-3, 1e-2}
-	gridQ      = [...]float64{-1, -0.5, 0}
+	gridQ = [...]float64{-1, -0.5, 0}
 )
 
 // heldOut holds, for one scorer, the class scores of the rows it did not see.
@@ -64,7 +63,7 @@ func (in *intake) trainFold(fold, designs int, seed uint64, s *chain.Scratch) *l
 	for i := range which {
 		which[i] = i
 	}
-	return learn.Train(in.data, g, which, gridLambda[:], gridQ[:], rng, s)
+	return learn.Train(in.data, g, which, gridQ[:], rng, s)
 }
 
 // score writes the class scores of a fold's held-out rows.
@@ -77,6 +76,12 @@ func (in *intake) score(sc *learn.Scorer, fold int, out *heldOut) {
 		}
 		r.Dense = in.data.X[i*d : (i+1)*d]
 		r.Bins = in.data.Bins.Rows[i*b : (i+1)*b]
+		for j, x := range in.data.Smooth {
+			if x != nil {
+				m := in.data.Kernels[j].Size() + 1
+				r.Smooth[j] = x[i*m : (i+1)*m]
+			}
+		}
 		sc.Walk(r)
 		for v := range out.votes {
 			sc.Vote(v, r, out.votes[v][i*k:(i+1)*k])

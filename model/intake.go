@@ -4,10 +4,12 @@ import (
 	"cmp"
 	"fmt"
 	"math"
+	"math/rand/v2"
 	"slices"
 
 	"labelweir/model/internal/encode"
 	"labelweir/model/internal/forest"
+	"labelweir/model/internal/kernel"
 	"labelweir/model/internal/learn"
 )
 
@@ -33,7 +35,7 @@ type field struct {
 }
 
 // newIntake checks t and encodes its usable rows.
-func newIntake(t *Table, folds int) (*intake, error) {
+func newIntake(t *Table) (*intake, error) {
 	if err := t.check(); err != nil {
 		return nil, err
 	}
@@ -60,15 +62,44 @@ func newIntake(t *Table, folds int) (*intake, error) {
 	in.encode(t)
 	in.data.Labels = make([]int32, len(in.rows))
 	in.counts = make([]int, len(in.classes))
-	in.fold = make([]uint8, len(in.rows))
 	for i, r := range in.rows {
 		c := class[t.Labels[r]]
 		in.data.Labels[i] = c
 		in.counts[c]++
-		in.fold[i] = uint8(t.Keys[r] % uint64(folds))
 	}
 	in.pickSources(t)
 	return in, nil
+}
+
+// smallRows: windows with fewer rows are cut into twice as many folds, since every row counts there.
+const smallRows = 1500
+
+// deal puts every used row into a fold by its key.
+func (in *intake) deal(t *Table, folds int) {
+	in.fold = make([]uint8, len(in.rows))
+	for i, r := range in.rows {
+		in.fold[i] = uint8(t.Keys[r] % uint64(folds))
+	}
+}
+
+// smooth computes the kernel features. Landmarks are drawn without looking at labels, so all folds share them.
+func (in *intake) smooth(seed uint64) {
+	d, n := in.data, in.data.Rows()
+	d.Kernels = make([]*kernel.Map, len(learn.KernelGammas))
+	d.Smooth = make([][]float32, len(learn.KernelGammas))
+	for j, gamma := range learn.KernelGammas {
+		m := kernel.New(d.X, n, d.Dense, d.Dense-1, learn.Landmarks, gamma, rand.New(rand.NewPCG(seed, 1000)))
+		if m == nil {
+			continue
+		}
+		w := m.Size() + 1
+		x, scratch := make([]float32, n*w), make([]float64, m.Size())
+		for i := range n {
+			m.Features(d.X[i*d.Dense:(i+1)*d.Dense], x[i*w:(i+1)*w-1], scratch)
+			x[(i+1)*w-1] = 1
+		}
+		d.Kernels[j], d.Smooth[j] = m, x
+	}
 }
 
 // pickClasses lists the classes with enough rows by name and maps table codes to them, −1 for the others.

@@ -51,13 +51,19 @@ func NewTrainer(o Options) *Trainer { return &Trainer{opt: o} }
 // Fit trains on t, which it neither keeps nor changes. The first call searches encoder, λ and q (cold); later ones
 // start from the last result (warm). Errors: ErrTable, ErrTooFew, ErrOneClass, or the context's.
 func (tr *Trainer) Fit(ctx context.Context, t *Table) (*Result, error) {
-	in, err := newIntake(t, tr.opt.Folds)
+	in, err := newIntake(t)
 	if err != nil {
 		return nil, err
 	}
 	nd := len(learn.Designs())
+	folds := tr.opt.Folds
+	if len(in.rows) < smallRows {
+		folds *= 2
+	}
+	in.smooth(tr.opt.Seed)
+	in.deal(t, folds)
 	n, k := len(in.rows), in.data.Classes
-	out := &heldOut{linear: make([][]float64, nd*len(gridLambda)*len(gridQ))}
+	out := &heldOut{linear: make([][]float64, nd*3*len(gridQ))}
 	for i := range out.votes {
 		out.votes[i] = make([]float64, n*k)
 	}
@@ -65,7 +71,7 @@ func (tr *Trainer) Fit(ctx context.Context, t *Table) (*Result, error) {
 		out.linear[i] = make([]float64, n*k)
 	}
 	var settings []learn.Linear
-	err = each(ctx, tr.opt.Folds, tr.opt.Workers, func(i int, s *chain.Scratch) error {
+	err = each(ctx, folds, tr.opt.Workers, func(i int, s *chain.Scratch) error {
 		sc := in.trainFold(i, nd, tr.opt.Seed, s)
 		in.score(sc, i, out)
 		if i == 0 {
@@ -80,7 +86,7 @@ func (tr *Trainer) Fit(ctx context.Context, t *Table) (*Result, error) {
 	var names []string
 	use := os.Getenv("LW_MEMBERS")
 	if use == "" {
-		use = "raw,cleaned,d0,d1,d2"
+		use = "raw,cleaned,d0,d1,d2,d3,d4"
 	}
 	for _, u := range strings.Split(use, ",") {
 		switch u {

@@ -12,27 +12,31 @@ type Grown struct {
 	InBag []bool  // len(rows)·Trees: whether the tree was grown on that row
 }
 
-// Grow grows a forest on the listed rows of b. labels[i] in [0, classes) and weight[i] in [0,1] belong to rows[i]; a
-// row enters a tree with chance Bag·weight. weight nil means 1 for all. Splits maximise the class-balanced Gini
-// criterion. Cost O(Trees · len(rows) · (Tries + 1) · depth).
-func Grow(b *Bins, rows, labels []int32, weight []float64, classes int, o Options, rng *rand.Rand) *Grown {
+// Grow grows a forest on the listed rows of b. labels[i] in [0, classes) belongs to rows[i]. When chance is given, every
+// tree draws its own labels instead: that of rows[i] is c with chance[i·classes+c]. Splits maximise the class-balanced
+// Gini criterion. Cost O(Trees · len(rows) · (Tries + 1) · depth).
+func Grow(b *Bins, rows, labels []int32, chance []float64, classes int, o Options, rng *rand.Rand) *Grown {
 	if o.Tries == 0 {
 		o.Tries = int(math.Ceil(math.Sqrt(float64(b.D))))
 	}
-	g := &grower{b: b, rows: rows, labels: labels, o: o, rng: rng,
+	if chance != nil {
+		labels = make([]int32, len(rows))
+	}
+	g := &grower{b: b, rows: rows, labels: labels, chance: chance, o: o, rng: rng,
 		f:      &Forest{Classes: classes},
 		left:   make([]float64, classes),
 		total:  make([]float64, classes),
 		counts: make([]int32, classes),
 		idx:    make([]int32, 0, len(rows)), spare: make([]int32, len(rows)),
 	}
-	g.balance()
 	out := &Grown{Forest: g.f,
 		Leaf:  make([]int32, len(rows)*o.Trees),
 		InBag: make([]bool, len(rows)*o.Trees),
 	}
 	for t := range o.Trees {
-		g.draw(weight)
+		g.relabel()
+		g.balance()
+		g.draw()
 		for _, i := range g.idx {
 			out.InBag[int(i)*o.Trees+t] = true
 		}
@@ -64,6 +68,7 @@ type grower struct {
 	o            Options
 	rng          *rand.Rand
 	f            *Forest
+	chance       []float64 // len(rows)·classes, or nil
 	classWeight  []float64
 	left, total  []float64
 	counts       []int32
@@ -80,7 +85,10 @@ type span struct {
 
 // balance gives every class the same total weight.
 func (g *grower) balance() {
-	g.classWeight = make([]float64, g.f.Classes)
+	if g.classWeight == nil {
+		g.classWeight = make([]float64, g.f.Classes)
+	}
+	clear(g.classWeight)
 	for _, l := range g.labels {
 		g.classWeight[l]++
 	}
@@ -91,14 +99,28 @@ func (g *grower) balance() {
 	}
 }
 
-func (g *grower) draw(weight []float64) {
+// relabel draws this tree's labels.
+func (g *grower) relabel() {
+	if g.chance == nil {
+		return
+	}
+	k := g.f.Classes
+	for i := range g.labels {
+		u := g.rng.Float64()
+		p := g.chance[i*k : i*k+k]
+		c := 0
+		for c < k-1 && u >= p[c] {
+			u -= p[c]
+			c++
+		}
+		g.labels[i] = int32(c)
+	}
+}
+
+func (g *grower) draw() {
 	g.idx = g.idx[:0]
 	for i := range g.rows {
-		p := g.o.Bag
-		if weight != nil {
-			p *= weight[i]
-		}
-		if g.rng.Float64() < p {
+		if g.rng.Float64() < g.o.Bag {
 			g.idx = append(g.idx, int32(i))
 		}
 	}

@@ -32,12 +32,13 @@ const clip = 3
 type Row struct {
 	Dense  []float32
 	Bins   []uint8
+	Smooth [][]float32 // features of each kernel
 	leaves [forests][]int32
 }
 
 // NewRow returns scratch for rows with so many dense values and bins.
 func (s *Scorer) NewRow(dense, bins int) *Row {
-	r := &Row{Dense: make([]float32, dense), Bins: make([]uint8, bins)}
+	r := &Row{Dense: make([]float32, dense), Bins: make([]uint8, bins), Smooth: make([][]float32, len(KernelGammas))}
 	for i, f := range s.Forests {
 		if f != nil {
 			r.leaves[i] = make([]int32, f.Trees())
@@ -88,7 +89,11 @@ func (s *Scorer) Decide(i int, r *Row, dst []float64) {
 	if len(leaves) > 0 {
 		leaf = d.Leaf / math.Sqrt(float64(len(leaves)))
 	}
-	n := len(r.Dense)
+	x := r.Dense
+	if d.Kernel > 0 {
+		x = r.Smooth[d.Kernel-1]
+	}
+	n := len(x)
 	scale := 2 / float64(s.Classes)
 	for k := range l.Pairs {
 		p := &l.Pairs[k]
@@ -97,7 +102,7 @@ func (s *Scorer) Decide(i int, r *Row, dst []float64) {
 		}
 		w := p.W[:n]
 		dot := 0.0
-		for j, x := range r.Dense[:n-1] {
+		for j, x := range x[:n-1] {
 			dot += float64(x) * w[j]
 		}
 		v := number*dot + w[n-1]

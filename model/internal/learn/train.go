@@ -15,22 +15,21 @@ func Trees(n int) int { return min(max(400000/max(n, 1), 100), 300) }
 // bag is the share of rows a tree is grown on: that of distinct rows in a bootstrap sample.
 const bag = 0.632
 
-// Grow grows the forests of a fold on the listed rows. cleaned and weight are the labels and weights that replaced the
-// observed ones.
+// Grow grows the forests of a fold on the listed rows.
 func Grow(d *Data, rows []int32, rng *rand.Rand) *Grown {
 	trees := Trees(len(rows))
 	deep := forest.Options{Trees: trees, MaxDepth: 30, MinLeaf: 1, Bag: bag}
-	g := &Grown{rows: rows, labels: make([]int32, len(rows)), weight: make([]float64, len(rows))}
+	g := &Grown{rows: rows, labels: make([]int32, len(rows)), chance: make([]float64, len(rows)*d.Classes)}
 	for i, r := range rows {
 		g.labels[i] = d.Labels[r]
 	}
 	raw := forest.Grow(d.Bins, rows, g.labels, nil, d.Classes, deep, rng)
 	g.forests[Raw] = raw
 	g.clean(d, raw)
-	g.forests[Cleaned] = forest.Grow(d.Bins, rows, g.labels, g.weight, d.Classes, deep, rng)
+	g.forests[Cleaned] = forest.Grow(d.Bins, rows, nil, g.chance, d.Classes, deep, rng)
 	shallow := deep
 	shallow.MaxDepth, shallow.MinLeaf = 8, 5
-	g.forests[Shallow] = forest.Grow(d.Bins, rows, g.labels, g.weight, d.Classes, shallow, rng)
+	g.forests[Shallow] = forest.Grow(d.Bins, rows, nil, g.chance, d.Classes, shallow, rng)
 	return g
 }
 
@@ -38,7 +37,7 @@ func Grow(d *Data, rows []int32, rng *rand.Rand) *Grown {
 type Grown struct {
 	rows    []int32
 	labels  []int32
-	weight  []float64
+	chance  []float64 // len(rows)·classes: how probable each class is after cleaning
 	forests [forests]*forest.Grown
 }
 
@@ -61,12 +60,12 @@ func (g *Grown) clean(d *Data, raw *forest.Grown) {
 		logShares(dst, raw.Trees())
 	}
 	layer, _ := noise.Quick(nd)
-	layer.Clean(nd, g.labels, g.weight)
+	layer.Clean(nd, g.chance)
 }
 
 // Train fits linear scorers for the given designs and λ at every q of qs, and returns a scorer of them all, settings in
 // the order design, λ, q.
-func Train(d *Data, g *Grown, which []int, lambdas, qs []float64, rng *rand.Rand, s *chain.Scratch) *Scorer {
+func Train(d *Data, g *Grown, which []int, qs []float64, rng *rand.Rand, s *chain.Scratch) *Scorer {
 	out := &Scorer{Classes: d.Classes}
 	for i, f := range g.forests {
 		if f != nil {
@@ -75,7 +74,7 @@ func Train(d *Data, g *Grown, which []int, lambdas, qs []float64, rng *rand.Rand
 	}
 	for _, di := range which {
 		m := g.matrix(d, &designs[di])
-		for _, lambda := range lambdas {
+		for _, lambda := range designs[di].Lambdas {
 			at := len(out.Linear)
 			for _, q := range qs {
 				out.Linear = append(out.Linear, Linear{Setting: Setting{di, lambda, q}})
@@ -99,14 +98,17 @@ func Train(d *Data, g *Grown, which []int, lambdas, qs []float64, rng *rand.Rand
 
 // matrix is the design matrix of the training rows.
 func (g *Grown) matrix(d *Data, des *Design) *chain.Design {
-	n := len(g.rows)
-	m := &chain.Design{N: n, Dense: d.Dense, X: make([]float32, n*d.Dense)}
+	n, x, wide := len(g.rows), d.X, d.Dense
+	if des.Kernel > 0 {
+		x, wide = d.Smooth[des.Kernel-1], d.Kernels[des.Kernel-1].Size()+1
+	}
+	m := &chain.Design{N: n, Dense: wide, X: make([]float32, n*wide)}
 	for i, r := range g.rows {
-		dst, src := m.X[i*d.Dense:(i+1)*d.Dense], d.X[int(r)*d.Dense:int(r+1)*d.Dense]
+		dst, src := m.X[i*wide:(i+1)*wide], x[int(r)*wide:int(r+1)*wide]
 		for j, v := range src {
 			dst[j] = v * float32(des.Number)
 		}
-		dst[d.Dense-1] = 1
+		dst[wide-1] = 1
 	}
 	if des.Leaf > 0 {
 		f := g.forests[des.Forest]

@@ -30,17 +30,12 @@ func Quick(d *Data) (*Layer, float64) {
 	return &Layer{Classes: k, Models: []Model{{Name: best.name, Weight: 1, P: *best.p}}}, best.evidence
 }
 
-// Clean gives each row its most probable true class and that class's probability.
-func (l *Layer) Clean(d *Data, label []int32, weight []float64) {
+// Clean writes into chance (n·k) how probable each class is for each row, given its observed label.
+func (l *Layer) Clean(d *Data, chance []float64) {
 	j := l.NewJudge()
+	k := d.Classes
 	for i := range d.Rows() {
 		j.mix(d.Members, i, int(d.Observed[i]), d.source(i))
-		best := 0
-		for c, v := range j.post {
-			if v > j.post[best] {
-				best = c
-			}
-		}
-		label[i], weight[i] = int32(best), j.post[best]
+		copy(chance[i*k:i*k+k], j.post)
 	}
 }
