@@ -34,6 +34,9 @@ func commands() []command {
 // run runs one command and gives the exit code.
 func run(ctx context.Context, p *process, args []string) int {
 	err := dispatch(ctx, p, args)
+	if p.out.err != nil {
+		err = &failure{exitWrite, fmt.Errorf("standard output: can't be written: %w; send it elsewhere", plain(p.out.err))}
+	}
 	if err != nil {
 		say(ctx, p, err)
 	}

@@ -26,7 +26,7 @@ is set against what was planted.`,
 
 func demoFlags(o *demo.Options) []argv.Flag {
 	return []argv.Flag{
-		{Name: "rows", Takes: "COUNT", Brief: "apples on the line (8000)", Set: func(v string) (err error) {
+		{Name: "rows", Takes: "COUNT", Brief: "apples on the line (6000)", Set: func(v string) (err error) {
 			if o.Rows, err = strconv.Atoi(v); err != nil || o.Rows < demo.MinRows {
 				return fmt.Errorf("%q is not a whole number from %d on", v, demo.MinRows)
 			}
@@ -35,6 +35,12 @@ func demoFlags(o *demo.Options) []argv.Flag {
 		{Name: "seed", Takes: "NUMBER", Brief: "seed of the line and of the sweep (1)", Set: func(v string) (err error) {
 			if o.Seed, err = strconv.ParseUint(v, 10, 64); err != nil {
 				return fmt.Errorf("%q is not a whole number from 0 on", v)
+			}
+			return nil
+		}},
+		{Name: "window", Takes: "ROWS", Brief: "let a window of so many rows slide over the line", Set: func(v string) (err error) {
+			if o.Window, err = strconv.Atoi(v); err != nil || o.Window < demo.MinRows {
+				return fmt.Errorf("%q is not a whole number from %d on", v, demo.MinRows)
 			}
 			return nil
 		}},

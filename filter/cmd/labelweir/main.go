@@ -30,7 +30,7 @@ func start() int {
 		}
 	}()
 	return run(ctx, &process{
-		out:      os.Stdout,
+		out:      &output{w: os.Stdout},
 		err:      os.Stderr,
 		terminal: term.Is(os.Stderr),
 		environ:  os.Environ,
@@ -39,8 +39,23 @@ func start() int {
 
 // process is what a command sees of the outside.
 type process struct {
-	out      io.Writer // data asked for; nothing else
+	out      *output   // data asked for; nothing else
 	err      io.Writer // everything a person reads
 	terminal bool      // err is a terminal
 	environ  func() []string
+}
+
+// output is standard output; it keeps the first error, so that it need not be looked at after every line.
+type output struct {
+	w   io.Writer
+	err error
+}
+
+func (o *output) Write(text []byte) (int, error) {
+	if o.err != nil {
+		return 0, o.err
+	}
+	n, err := o.w.Write(text)
+	o.err = err
+	return n, err
 }

@@ -22,7 +22,7 @@ import (
 //
 // Row i belongs to one of two classes, drawn by a hash; every twentieth label is of the other class. Patterns of numbers:
 // good (tells the classes apart), noise, row, flat, null, nan and inf (every fortieth so), and of labels: label, one (a
-// single class), rare (two rows of a third class), holes (every tenth missing), null. The pattern "time" counts seconds.
+// single class), rare (two rows of a third class), holes (every tenth missing), null, and who (one of three graders).
 func mkarrow(ts *testscript.TestScript, neg bool, args []string) {
 	if neg || len(args) < 3 {
 		ts.Fatalf("usage: mkarrow FILE ROWS NAME=TYPE:PATTERN...")
@@ -168,6 +168,10 @@ func appendValue(b array.Builder, i int, pattern string) error {
 	case *array.StringBuilder:
 		if c < 0 {
 			b.AppendNull()
+			return nil
+		}
+		if pattern == "who" {
+			b.Append("grader-" + strconv.Itoa(1+int(3*hash(i, 5))))
 			return nil
 		}
 		b.Append("class-" + strconv.Itoa(c+1))

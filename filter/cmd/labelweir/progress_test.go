@@ -6,20 +6,23 @@ import (
 	"strings"
 	"testing"
 
-	"labelweir/filter/cmd/labelweir/internal/demo"
+	"github.com/apache/arrow/go/v16/arrow"
 )
 
 // TestProgressIsForTerminalsOnly runs one sweep as on a terminal and one as in a pipe.
 func TestProgressIsForTerminalsOnly(t *testing.T) {
 	dir := t.TempDir()
 	line := filepath.Join(dir, "line.arrow")
-	if err := demo.Grow(500, 1).WriteLine(line); err != nil {
+	schema := arrow.NewSchema([]arrow.Field{
+		{Name: "size", Type: arrow.PrimitiveTypes.Float64, Nullable: true}, {Name: "grade", Type: arrow.BinaryTypes.String, Nullable: true},
+	}, nil)
+	if err := writeArrow(line, schema, 200, []string{"good", "label"}); err != nil {
 		t.Fatal(err)
 	}
 	for _, terminal := range []bool{true, false} {
 		var out, err bytes.Buffer
-		p := &process{out: &out, err: &err, terminal: terminal, environ: func() []string { return nil }}
-		args := []string{"sweep", line, "--label", "grade", "--fields", "diameter_mm,firmness_n", "--replace", "--out", filepath.Join(dir, "out.arrow")}
+		p := &process{out: &output{w: &out}, err: &err, terminal: terminal, environ: func() []string { return nil }}
+		args := []string{"sweep", line, "--label", "grade", "--replace", "--out", filepath.Join(dir, "out.arrow")}
 		if got := run(t.Context(), p, args); got != 0 {
 			t.Fatalf("ended with %d: %s", got, err.String())
 		}

@@ -22,7 +22,7 @@ func TestPyarrowAndScikitLearnAgree(t *testing.T) {
 		t.Skip("python3 with pyarrow and scikit-learn is needed: pip install pyarrow scikit-learn")
 	}
 	dir := t.TempDir()
-	o := Options{Rows: 3000, Seed: 1, Dir: dir}
+	o := Options{Rows: 2000, Seed: 1, Dir: dir}
 	outcome, err := Run(t.Context(), o, io.Discard, sweep.Watch{})
 	if err != nil {
 		t.Fatal(err)

@@ -18,16 +18,17 @@ import (
 
 // Options of a demo.
 type Options struct {
-	Rows int    // apples; default 8000
-	Seed uint64 // of the harvest and of the sweep; default 1
-	Dir  string // folder to keep the files in; empty: a temporary one that is removed
+	Rows   int    // apples; default 6000
+	Seed   uint64 // of the harvest and of the sweep; default 1
+	Window int    // rows of a sliding window; default 0: the whole line is one window
+	Dir    string // folder to keep the files in; empty: a temporary one that is removed
 }
 
 // MinRows is the fewest apples for which halves and graders can be told apart.
 const MinRows = 500
 
 // DefaultOptions gives the defaults named in Options.
-func DefaultOptions() Options { return Options{Rows: 8000, Seed: 1} }
+func DefaultOptions() Options { return Options{Rows: 6000, Seed: 1} }
 
 // Run grows a harvest, sweeps it, and writes to out what was planted and found. The files it keeps are line.arrow and
 // planted.arrow, and passed.arrow, held.arrow, report.json and last.weir from the sweep; none of them may exist.
@@ -108,15 +109,18 @@ func bare(err error) error {
 	return err
 }
 
+// flag is one of sweep's, the setting it stands for, and its value: a file of the demo's folder when file is set.
+type flag struct {
+	name, path, value string
+	file              bool
+}
+
 // settings gives those of the sweep, and the same as a command line.
 func settings(o Options, dir string) (c *config.Config, call string, err error) {
 	l := config.NewLoader()
 	l.Flag("FILE", "input.file.path", filepath.Join(dir, "line.arrow"))
 	call = "labelweir sweep line.arrow"
-	for _, s := range []struct {
-		flag, path, value string
-		file              bool
-	}{
+	flags := []flag{
 		{"label", "record.label", "grade", false},
 		{"source", "record.source", "grader", false},
 		{"time", "record.time", "graded_at", false},
@@ -126,12 +130,17 @@ func settings(o Options, dir string) (c *config.Config, call string, err error) 
 		{"quarantine", "output.file.quarantine", "held.arrow", true},
 		{"report", "output.file.report", "report.json", true},
 		{"snapshot", "output.file.snapshot", "last.weir", true},
-	} {
-		call += " --" + s.flag + " " + s.value
-		if s.file {
-			s.value = filepath.Join(dir, s.value)
+	}
+	if o.Window > 0 {
+		flags = append(flags, flag{"window", "window.records", strconv.Itoa(o.Window), false},
+			flag{"retrain", "retrain.every", "20%", false}, flag{"hold", "filter.hold", strconv.Itoa(o.Window / 5), false})
+	}
+	for _, f := range flags {
+		call += " --" + f.name + " " + f.value
+		if f.file {
+			f.value = filepath.Join(dir, f.value)
 		}
-		l.Flag("--"+s.flag, s.path, s.value)
+		l.Flag("--"+f.name, f.path, f.value)
 	}
 	c, err = l.Sweep()
 	return c, call, err
