@@ -4,12 +4,9 @@ import (
 	"cmp"
 	"fmt"
 	"math"
-	"math/rand/v2"
 	"slices"
 
 	"labelweir/model/internal/encode"
-	"labelweir/model/internal/forest"
-	"labelweir/model/internal/kernel"
 	"labelweir/model/internal/learn"
 )
 
@@ -34,7 +31,7 @@ type field struct {
 	Levels []string
 }
 
-// newIntake checks t and encodes its usable rows.
+// newIntake checks t and picks its usable rows. Nothing is encoded yet.
 func newIntake(t *Table) (*intake, error) {
 	if err := t.check(); err != nil {
 		return nil, err
@@ -59,13 +56,18 @@ func newIntake(t *Table) (*intake, error) {
 	if len(in.classes) < 2 {
 		return nil, fmt.Errorf("%w: %d classes have at least %d rows each", ErrOneClass, len(in.classes), MinClassRows)
 	}
-	in.encode(t)
+	for k := range t.Columns {
+		c := &t.Columns[k]
+		in.fields = append(in.fields, field{Name: c.Name, Kind: c.Kind, Size: c.Size, Levels: slices.Clone(c.Levels)})
+	}
+	in.data.Keys = make([]uint64, len(in.rows))
 	in.data.Labels = make([]int32, len(in.rows))
 	in.counts = make([]int, len(in.classes))
 	for i, r := range in.rows {
 		c := class[t.Labels[r]]
 		in.data.Labels[i] = c
 		in.counts[c]++
+		in.data.Keys[i] = t.Keys[r]
 	}
 	in.pickSources(t)
 	return in, nil
@@ -75,30 +77,10 @@ func newIntake(t *Table) (*intake, error) {
 const smallRows = 1500
 
 // deal puts every used row into a fold by its key.
-func (in *intake) deal(t *Table, folds int) {
+func (in *intake) deal(folds int) {
 	in.fold = make([]uint8, len(in.rows))
-	for i, r := range in.rows {
-		in.fold[i] = uint8(t.Keys[r] % uint64(folds))
-	}
-}
-
-// smooth computes the kernel features. Landmarks are drawn without looking at labels, so all folds share them.
-func (in *intake) smooth(seed uint64) {
-	d, n := in.data, in.data.Rows()
-	d.Kernels = make([]*kernel.Map, len(learn.KernelGammas))
-	d.Smooth = make([][]float32, len(learn.KernelGammas))
-	for j, gamma := range learn.KernelGammas {
-		m := kernel.New(d.X, n, d.Dense, d.Dense-1, learn.Landmarks, gamma, rand.New(rand.NewPCG(seed, 1000)))
-		if m == nil {
-			continue
-		}
-		w := m.Size() + 1
-		x, scratch := make([]float32, n*w), make([]float64, m.Size())
-		for i := range n {
-			m.Features(d.X[i*d.Dense:(i+1)*d.Dense], x[i*w:(i+1)*w-1], scratch)
-			x[(i+1)*w-1] = 1
-		}
-		d.Kernels[j], d.Smooth[j] = m, x
+	for i, k := range in.data.Keys {
+		in.fold[i] = uint8(k % uint64(folds))
 	}
 }
 
@@ -175,32 +157,6 @@ func finite(t *Table, i int) bool {
 		}
 	}
 	return true
-}
-
-// encode fits the encoder on the used rows and encodes them.
-func (in *intake) encode(t *Table) {
-	cols := make([]encode.Input, len(t.Columns))
-	for k := range t.Columns {
-		c := &t.Columns[k]
-		in.fields = append(in.fields, field{Name: c.Name, Kind: c.Kind, Size: c.Size, Levels: slices.Clone(c.Levels)})
-		cols[k] = gather(c, in.rows)
-	}
-	n := len(in.rows)
-	in.encoder = encode.Fit(cols, n)
-	d, b := in.encoder.Dense, in.encoder.Bins
-	bins := &forest.Bins{N: n, D: b, Rows: make([]uint8, n*b), Cols: make([][]uint8, b)}
-	x := make([]float32, n*d)
-	for i := range n {
-		in.encoder.Row(cols, i, 1, x[i*d:(i+1)*d], bins.Rows[i*b:(i+1)*b])
-	}
-	for j := range bins.Cols {
-		col := make([]uint8, n)
-		for i := range col {
-			col[i] = bins.Rows[i*b+j]
-		}
-		bins.Cols[j] = col
-	}
-	in.data.Dense, in.data.X, in.data.Bins = d, x, bins
 }
 
 // gather copies the used rows of a column.

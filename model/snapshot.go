@@ -1,11 +1,24 @@
 package model
 
-import "io"
+import (
+	"labelweir/model/internal/encode"
+	"labelweir/model/internal/forest"
+	"labelweir/model/internal/kernel"
+	"labelweir/model/internal/learn"
+	"labelweir/model/internal/noise"
+)
 
 // Snapshot is one trained, immutable scorer. It may be shared between goroutines.
 type Snapshot struct {
-	id    string
-	facts Facts
+	id      string
+	facts   Facts
+	fields  []field
+	encoder *encode.Encoder
+	kernels []*kernel.Map
+	forests [learn.Forests]*forest.Forest // nil where no member needs it
+	plan    []member
+	linear  []learn.Linear // by member; empty for votes
+	layer   *noise.Layer
 }
 
 // ID is 12 hexadecimal digits of a hash over the saved bytes.
@@ -14,21 +27,24 @@ func (s *Snapshot) ID() string { return s.id }
 // Facts tells what the snapshot was fitted on and what it found.
 func (s *Snapshot) Facts() *Facts { return &s.facts }
 
-// WriteTo saves the snapshot in its own checksummed format.
-func (s *Snapshot) WriteTo(w io.Writer) (int64, error) { return 0, nil }
-
-// ReadSnapshot loads what WriteTo saved; anything else is an error that wraps ErrSnapshot.
-func ReadSnapshot(r io.Reader) (*Snapshot, error) { return nil, ErrSnapshot }
-
-// Scorer judges rows that the snapshot was not trained on. It owns scratch memory and belongs to one goroutine.
-type Scorer struct {
-	s *Snapshot
+// snapshot takes the scorer of fresh rows out of a training.
+func (f *fitting) snapshot(layer *noise.Layer) *Snapshot {
+	whole := f.folds[len(f.folds)-1]
+	s := &Snapshot{fields: f.fields, encoder: f.encoder, plan: f.plan, layer: layer,
+		kernels: make([]*kernel.Map, len(f.data.Kernels)), linear: make([]learn.Linear, len(f.plan))}
+	for i, m := range f.plan {
+		if m.forest >= 0 {
+			s.forests[m.forest] = whole.Forest[m.forest]
+			continue
+		}
+		s.linear[i] = f.linear[m.setting]
+		d := &learn.Designs[m.setting.Design]
+		if d.Leaf > 0 {
+			s.forests[learn.Cleaned] = whole.Forest[learn.Cleaned]
+		}
+		if d.Kernel > 0 {
+			s.kernels[d.Kernel-1] = f.data.Kernels[d.Kernel-1]
+		}
+	}
+	return s
 }
-
-// NewScorer returns a scorer of s.
-func (s *Snapshot) NewScorer() *Scorer { return &Scorer{s: s} }
-
-// Score writes into dst[i−lo] what the snapshot says of rows lo ≤ i < hi of t; len(dst) = hi−lo. Columns are matched
-// by name; classes and levels the snapshot never met are NewClass and missing values. It allocates nothing once it has
-// met the table's classes and levels. The error wraps ErrSchema.
-func (sc *Scorer) Score(t *Table, lo, hi int, dst []Score) error { return nil }

@@ -10,68 +10,96 @@ type Bins struct {
 	Rows []uint8   // N·D, row after row
 }
 
-// Options say how a forest is grown.
-type Options struct {
-	Trees    int
-	MaxDepth int
-	MinLeaf  int     // fewest in-bag rows of a leaf
-	Bag      float64 // share of rows each tree is grown on
-	Tries    int     // candidate features a node; 0: √D, rounded up
+// Row is the bins of row i.
+func (b *Bins) Row(i int) []uint8 { return b.Rows[i*b.D : (i+1)*b.D] }
+
+// Node is one split, or a leaf when Child < 0. Rows with bin ≤ Cut go to Child, the others to Child+1.
+type Node struct {
+	Child   int32 // ≥ 0: index of the left child; < 0: ^leaf
+	Feature uint16
+	Cut     uint8
 }
 
-// node is one split, or a leaf when child < 0. Rows with bin ≤ cut go to child, the others to child+1.
-type node struct {
-	child   int32 // ≥ 0: index of the left child; < 0: ^leaf
-	feature uint16
-	cut     uint8
+// Tree is one grown tree; it is immutable.
+type Tree struct {
+	Nodes  []Node
+	Shares []float32 // leaves·classes: class shares of the in-bag rows of each leaf
+	Seed   uint64    // decides which rows were in its bag, see InBag
 }
 
-// Forest is a grown forest; it is immutable.
+// Leaf is the leaf that a row with these bins falls into.
+func (t *Tree) Leaf(bins []uint8) int32 {
+	n := t.Nodes[0]
+	for n.Child >= 0 {
+		next := n.Child
+		if bins[n.Feature] > n.Cut {
+			next++
+		}
+		n = t.Nodes[next]
+	}
+	return ^n.Child
+}
+
+// Forest is a list of trees over the same classes and bins. Leaf ids of the forest are those of its trees one after
+// the other: tree t's leaf l has the id First[t] + l.
 type Forest struct {
 	Classes int
-	Leaves  int       // of all trees; leaf ids are 0 ≤ id < Leaves
-	Shares  []float32 // Leaves·Classes: class shares of the in-bag rows of each leaf
-	nodes   []node
-	roots   []int32
+	Trees   []*Tree
+	First   []int32 // one more than there are trees; the last is the number of leaves
 }
 
-// Trees is the number of trees.
-func (f *Forest) Trees() int { return len(f.roots) }
+// New puts trees together.
+func New(classes int, trees []*Tree) *Forest {
+	f := &Forest{Classes: classes, Trees: trees, First: make([]int32, len(trees)+1)}
+	for t, tree := range trees {
+		f.First[t+1] = f.First[t] + int32(len(tree.Shares)/classes)
+	}
+	return f
+}
 
-// Walk writes into leaves[t] the leaf of tree t that the row with these bins falls into. len(leaves) = f.Trees().
+// Leaves is the number of leaves of all trees.
+func (f *Forest) Leaves() int { return int(f.First[len(f.Trees)]) }
+
+// Walk writes into leaves[t] the leaf id in tree t of a row with these bins. len(leaves) = len(f.Trees).
 func (f *Forest) Walk(bins []uint8, leaves []int32) {
-	nodes := f.nodes
-	for t, root := range f.roots {
-		n := nodes[root]
-		for n.child >= 0 {
-			next := n.child
-			if bins[n.feature] > n.cut {
-				next++
-			}
-			n = nodes[next]
-		}
-		leaves[t] = ^n.child
+	for t, tree := range f.Trees {
+		leaves[t] = f.First[t] + tree.Leaf(bins)
 	}
 }
 
-// Vote adds up the class shares of the given leaves, divides by their number and writes the result to dst
-// (len Classes). With no leaves every class gets 1/Classes.
-func (f *Forest) Vote(leaves []int32, dst []float64) {
-	k := f.Classes
+// Vote writes to dst (len Classes) the mean class shares of the row's leaf ids over the trees that skip, if given, does
+// not leave out. With no tree left every class gets 1/Classes.
+func (f *Forest) Vote(leaves []int32, skip func(t int) bool, dst []float64) {
 	clear(dst)
-	if len(leaves) == 0 {
-		for c := range dst {
-			dst[c] = 1 / float64(k)
+	n := 0
+	for t, id := range leaves {
+		if skip != nil && skip(t) {
+			continue
 		}
-		return
-	}
-	for _, l := range leaves {
-		share := f.Shares[int(l)*k : int(l)*k+k]
+		n++
+		l := int(id - f.First[t])
+		share := f.Trees[t].Shares[l*f.Classes : (l+1)*f.Classes]
 		for c, s := range share {
 			dst[c] += float64(s)
 		}
 	}
 	for c := range dst {
-		dst[c] /= float64(len(leaves))
+		if n == 0 {
+			dst[c] = 1 / float64(f.Classes)
+		} else {
+			dst[c] /= float64(n)
+		}
 	}
+}
+
+// bag is the share of rows a tree is grown on: that of the distinct rows in a bootstrap sample.
+const bag = 0.632
+
+// InBag tells whether a row with this key is in the bag of t, if it was there to be drawn when t was grown.
+func (t *Tree) InBag(key uint64) bool {
+	x := key ^ t.Seed
+	x = (x ^ x>>32) * 0xd6e8feb86659fd93
+	x = (x ^ x>>32) * 0xd6e8feb86659fd93
+	x ^= x >> 32
+	return float64(x>>11)/(1<<53) < bag
 }

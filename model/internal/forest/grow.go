@@ -5,131 +5,69 @@ import (
 	"math/rand/v2"
 )
 
-// Grown is a forest with what only its growing knows: the leaves of the rows it was grown among.
-type Grown struct {
-	*Forest
-	Leaf  []int32 // len(rows)·Trees: leaf of each listed row in each tree
-	InBag []bool  // len(rows)·Trees: whether the tree was grown on that row
+// Rows says which rows of Bins a tree may be grown on, with their labels.
+type Rows struct {
+	At     []int32   // rows of Bins
+	Key    []uint64  // key of each, see Tree.InBag
+	Label  []int32   // class of each
+	Chance []float64 // len(At)·classes, or nil. When given, every tree draws its own labels: c with Chance[i·classes+c]
 }
 
-// Grow grows a forest on the listed rows of b. labels[i] in [0, classes) belongs to rows[i]. When chance is given, every
-// tree draws its own labels instead: that of rows[i] is c with chance[i·classes+c]. Splits maximise the class-balanced
-// Gini criterion. Cost O(Trees · len(rows) · (Tries + 1) · depth).
-func Grow(b *Bins, rows, labels []int32, chance []float64, classes int, o Options, rng *rand.Rand) *Grown {
-	if o.Tries == 0 {
-		o.Tries = int(math.Ceil(math.Sqrt(float64(b.D))))
-	}
-	if chance != nil {
-		labels = make([]int32, len(rows))
-	}
-	g := &grower{b: b, rows: rows, labels: labels, chance: chance, o: o, rng: rng,
-		f:      &Forest{Classes: classes},
+// Options say how trees are grown.
+type Options struct {
+	MaxDepth int
+	MinLeaf  int // fewest in-bag rows of a leaf
+}
+
+// Grow grows n trees. Each is grown on a random 63 % of the rows; of √D random features, each with one random cut, a
+// node takes the one with the best class-balanced Gini criterion. Cost O(n · len(rows) · √D · depth).
+func Grow(b *Bins, rows Rows, classes, n int, o Options, rng *rand.Rand) []*Tree {
+	g := &grower{b: b, rows: rows.At, labels: rows.Label, chance: rows.Chance, o: o, rng: rng, k: classes,
+		tries:  int(math.Ceil(math.Sqrt(float64(b.D)))),
 		left:   make([]float64, classes),
 		total:  make([]float64, classes),
+		weight: make([]float64, classes),
 		counts: make([]int32, classes),
-		idx:    make([]int32, 0, len(rows)), spare: make([]int32, len(rows)),
+		spare:  make([]int32, len(rows.At)),
 	}
-	out := &Grown{Forest: g.f,
-		Leaf:  make([]int32, len(rows)*o.Trees),
-		InBag: make([]bool, len(rows)*o.Trees),
+	if rows.Chance != nil {
+		g.labels = make([]int32, len(rows.At))
 	}
-	for t := range o.Trees {
-		g.relabel()
-		g.balance()
-		g.draw()
-		for _, i := range g.idx {
-			out.InBag[int(i)*o.Trees+t] = true
-		}
-		g.f.roots = append(g.f.roots, int32(len(g.f.nodes)))
-		g.tree()
+	trees := make([]*Tree, n)
+	for i := range trees {
+		trees[i] = g.tree(rows.Key)
 	}
-	g.f.Leaves = len(g.f.Shares) / classes
-	for i, r := range rows {
-		g.f.Walk(b.Rows[int(r)*b.D:int(r+1)*b.D], out.Leaf[i*o.Trees:(i+1)*o.Trees])
-	}
-	return out
-}
-
-// OutOfBag writes into dst the vote on listed row i by the trees that were not grown on it.
-func (g *Grown) OutOfBag(i int, dst []float64, scratch []int32) {
-	trees := g.Trees()
-	scratch = scratch[:0]
-	for t := range trees {
-		if !g.InBag[i*trees+t] {
-			scratch = append(scratch, g.Leaf[i*trees+t])
-		}
-	}
-	g.Vote(scratch, dst)
+	return trees
 }
 
 type grower struct {
-	b            *Bins
-	rows, labels []int32
-	o            Options
-	rng          *rand.Rand
-	f            *Forest
-	chance       []float64 // len(rows)·classes, or nil
-	classWeight  []float64
-	left, total  []float64
-	counts       []int32
-	idx, spare   []int32 // positions in rows of the tree's in-bag rows
-	stack        []span
+	b                   *Bins
+	rows, labels        []int32
+	chance              []float64
+	o                   Options
+	rng                 *rand.Rand
+	k, tries            int
+	weight, left, total []float64 // by class
+	counts              []int32
+	idx, spare          []int32 // positions in rows of the tree's in-bag rows
+	stack               []span
+	t                   *Tree
 }
 
 // span is a node still to be split: idx[lo:hi].
-type span struct {
-	lo, hi int32
-	node   int32
-	depth  int32
-}
+type span struct{ lo, hi, node, depth int32 }
 
-// balance gives every class the same total weight.
-func (g *grower) balance() {
-	if g.classWeight == nil {
-		g.classWeight = make([]float64, g.f.Classes)
-	}
-	clear(g.classWeight)
-	for _, l := range g.labels {
-		g.classWeight[l]++
-	}
-	for c, n := range g.classWeight {
-		if n > 0 {
-			g.classWeight[c] = float64(len(g.labels)) / n
-		}
-	}
-}
-
-// relabel draws this tree's labels.
-func (g *grower) relabel() {
-	if g.chance == nil {
-		return
-	}
-	k := g.f.Classes
-	for i := range g.labels {
-		u := g.rng.Float64()
-		p := g.chance[i*k : i*k+k]
-		c := 0
-		for c < k-1 && u >= p[c] {
-			u -= p[c]
-			c++
-		}
-		g.labels[i] = int32(c)
-	}
-}
-
-func (g *grower) draw() {
+func (g *grower) tree(keys []uint64) *Tree {
+	g.t = &Tree{Nodes: make([]Node, 1), Seed: g.rng.Uint64()}
+	g.relabel()
+	g.balance()
 	g.idx = g.idx[:0]
-	for i := range g.rows {
-		if g.rng.Float64() < g.o.Bag {
+	for i, k := range keys {
+		if g.t.InBag(k) {
 			g.idx = append(g.idx, int32(i))
 		}
 	}
-}
-
-func (g *grower) tree() {
-	root := int32(len(g.f.nodes))
-	g.f.nodes = append(g.f.nodes, node{})
-	g.stack = append(g.stack[:0], span{lo: 0, hi: int32(len(g.idx)), node: root})
+	g.stack = append(g.stack[:0], span{hi: int32(len(g.idx))})
 	for len(g.stack) > 0 {
 		s := g.stack[len(g.stack)-1]
 		g.stack = g.stack[:len(g.stack)-1]
@@ -139,41 +77,71 @@ func (g *grower) tree() {
 			continue
 		}
 		mid := g.part(s, feature, cut)
-		child := int32(len(g.f.nodes))
-		g.f.nodes[s.node] = node{child: child, feature: uint16(feature), cut: cut}
-		g.f.nodes = append(g.f.nodes, node{}, node{})
+		child := int32(len(g.t.Nodes))
+		g.t.Nodes[s.node] = Node{Child: child, Feature: uint16(feature), Cut: cut}
+		g.t.Nodes = append(g.t.Nodes, Node{}, Node{})
 		g.stack = append(g.stack,
 			span{lo: mid, hi: s.hi, node: child + 1, depth: s.depth + 1},
 			span{lo: s.lo, hi: mid, node: child, depth: s.depth + 1})
 	}
+	return g.t
+}
+
+// relabel draws this tree's labels.
+func (g *grower) relabel() {
+	if g.chance == nil {
+		return
+	}
+	for i := range g.labels {
+		u := g.rng.Float64()
+		p := g.chance[i*g.k : (i+1)*g.k]
+		c := 0
+		for c < g.k-1 && u >= p[c] {
+			u -= p[c]
+			c++
+		}
+		g.labels[i] = int32(c)
+	}
+}
+
+// balance gives every class the same total weight.
+func (g *grower) balance() {
+	clear(g.weight)
+	for _, l := range g.labels {
+		g.weight[l]++
+	}
+	for c, n := range g.weight {
+		if n > 0 {
+			g.weight[c] = float64(len(g.labels)) / n
+		}
+	}
 }
 
 func (g *grower) leaf(s span) {
-	k := g.f.Classes
-	id := len(g.f.Shares) / k
-	g.f.nodes[s.node] = node{child: ^int32(id)}
+	id := len(g.t.Shares) / g.k
+	g.t.Nodes[s.node] = Node{Child: ^int32(id)}
 	clear(g.counts)
 	for _, i := range g.idx[s.lo:s.hi] {
 		g.counts[g.labels[i]]++
 	}
 	n := float32(s.hi - s.lo)
 	for _, c := range g.counts {
-		share := 1 / float32(k)
+		share := 1 / float32(g.k)
 		if n > 0 {
 			share = float32(c) / n
 		}
-		g.f.Shares = append(g.f.Shares, share)
+		g.t.Shares = append(g.t.Shares, share)
 	}
 }
 
-// split looks for the best of Tries random cuts of s.
+// split looks for the best of some random cuts of s; features that do not vary in it are drawn again, within limits.
 func (g *grower) split(s span) (feature int, cut uint8, ok bool) {
 	in := g.idx[s.lo:s.hi]
 	if len(in) < 2*g.o.MinLeaf || len(in) < 2 || int(s.depth) >= g.o.MaxDepth || !g.countTotal(in) {
 		return 0, 0, false
 	}
 	best, valid := 0.0, 0
-	for try := 0; valid < g.o.Tries && try < 4*g.o.Tries+8; try++ {
+	for try := 0; valid < g.tries && try < 4*g.tries+8; try++ {
 		d := g.rng.IntN(g.b.D)
 		col := g.b.Cols[d]
 		at := col[g.rows[in[g.rng.IntN(len(in))]]]
@@ -197,7 +165,7 @@ func (g *grower) countTotal(in []int32) bool {
 	}
 	kinds := 0
 	for c, n := range g.counts {
-		g.total[c] = float64(n) * g.classWeight[c]
+		g.total[c] = float64(n) * g.weight[c]
 		if n > 0 {
 			kinds++
 		}
@@ -216,7 +184,7 @@ func (g *grower) countLeft(in []int32, col []uint8, cut uint8) int {
 	n := 0
 	for c, m := range counts {
 		n += int(m)
-		g.left[c] = float64(m) * g.classWeight[c]
+		g.left[c] = float64(m) * g.weight[c]
 	}
 	return n
 }

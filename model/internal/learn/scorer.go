@@ -6,60 +6,51 @@ import (
 	"labelweir/model/internal/forest"
 )
 
-// Scorer holds the forests and linear scorers of one fold. It is immutable once trained.
-type Scorer struct {
-	Classes int
-	Forests [forests]*forest.Forest // nil where nothing uses it
-	Linear  []Linear
-}
-
 // Linear is a one-against-one linear scorer.
 type Linear struct {
 	Setting
 	Pairs []Pair
 }
 
-// Pair is the weight vector between two classes, positive for A.
+// Pair is the weight vector between two classes, positive for A: the dense block, the constant, then the leaves.
 type Pair struct {
 	A, B int
-	W    []float64 // dense block at its design's scale, then leaves
+	W    []float64
 }
 
-// clip bounds a pair's decision in a class score.
-const clip = 3
-
-// Row is one encoded row with the scratch to score it.
-type Row struct {
-	Dense  []float32
-	Bins   []uint8
-	Smooth [][]float32 // features of each kernel
-	leaves [forests][]int32
+// Input is one encoded row as a scorer sees it.
+type Input struct {
+	Dense  []float32   // numbers, then the constant 1
+	Smooth [][]float32 // features of each kernel, then the constant 1
+	Leaves []int32     // leaf ids in the cleaned forest
 }
 
-// NewRow returns scratch for rows with so many dense values and bins.
-func (s *Scorer) NewRow(dense, bins int) *Row {
-	r := &Row{Dense: make([]float32, dense), Bins: make([]uint8, bins), Smooth: make([][]float32, len(KernelGammas))}
-	for i, f := range s.Forests {
-		if f != nil {
-			r.leaves[i] = make([]int32, f.Trees())
+// Input is row i of d as the fold sees it.
+func (f *Fold) Input(d *Data, i int, in *Input) {
+	in.Dense = d.X[i*d.Dense : (i+1)*d.Dense]
+	in.Smooth = in.Smooth[:0]
+	for j, x := range d.Smooth {
+		if x == nil {
+			in.Smooth = append(in.Smooth, nil)
+			continue
 		}
+		m := d.Kernels[j].Size() + 1
+		in.Smooth = append(in.Smooth, x[i*m:(i+1)*m])
 	}
-	return r
+	t := len(f.Forest[Cleaned].Trees)
+	in.Leaves = f.leaves[Cleaned][i*t : (i+1)*t]
 }
 
-// Walk finds the row's leaves in every forest. It comes before Vote and Decide.
-func (s *Scorer) Walk(r *Row) {
-	for i, f := range s.Forests {
-		if f != nil {
-			f.Walk(r.Bins, r.leaves[i])
-		}
-	}
+// Vote writes the class scores by which forest which judges row i.
+func (f *Fold) Vote(which, i int, dst []float64) {
+	t := len(f.Forest[which].Trees)
+	VoteScore(f.Forest[which], f.leaves[which][i*t:(i+1)*t], dst)
 }
 
-// Vote writes the class scores of forest i: centred logarithms of its vote.
-func (s *Scorer) Vote(i int, r *Row, dst []float64) {
-	s.Forests[i].Vote(r.leaves[i], dst)
-	logShares(dst, s.Forests[i].Trees())
+// VoteScore writes the centred logarithms of a forest's vote.
+func VoteScore(f *forest.Forest, leaves []int32, dst []float64) {
+	f.Vote(leaves, nil, dst)
+	logShares(dst, len(f.Trees))
 }
 
 // logShares turns shares into centred logarithms, floored at half a tree's vote.
@@ -76,42 +67,38 @@ func logShares(v []float64, trees int) {
 	}
 }
 
-// Decide writes the class scores of linear scorer i: 2/k times the sum of its clipped pair decisions.
-func (s *Scorer) Decide(i int, r *Row, dst []float64) {
-	l := &s.Linear[i]
-	d := &designs[l.Design]
+// clip bounds a pair's decision in a class score.
+const clip = 3
+
+// Score writes the class scores of l: 2/k times the sum of its clipped pair decisions. len(dst) = k.
+func (l *Linear) Score(in *Input, dst []float64) {
+	d := &Designs[l.Design]
 	clear(dst)
-	var leaves []int32
-	if d.Leaf > 0 {
-		leaves = r.leaves[d.Forest]
-	}
-	number, leaf := d.Number, 0.0
-	if len(leaves) > 0 {
-		leaf = d.Leaf / math.Sqrt(float64(len(leaves)))
-	}
-	x := r.Dense
+	x := in.Dense
 	if d.Kernel > 0 {
-		x = r.Smooth[d.Kernel-1]
+		x = in.Smooth[d.Kernel-1]
 	}
 	n := len(x)
-	scale := 2 / float64(s.Classes)
+	leaf := 0.0
+	if d.Leaf > 0 {
+		leaf = d.Leaf / math.Sqrt(float64(len(in.Leaves)))
+	}
+	scale := 2 / float64(len(dst))
 	for k := range l.Pairs {
 		p := &l.Pairs[k]
-		if p.W == nil {
-			continue
-		}
 		w := p.W[:n]
 		dot := 0.0
-		for j, x := range x[:n-1] {
-			dot += float64(x) * w[j]
+		for j, v := range x[:n-1] {
+			dot += float64(v) * w[j]
 		}
-		v := number*dot + w[n-1]
-		w = p.W[n:]
-		sum := 0.0
-		for _, j := range leaves {
-			sum += w[j]
+		v := d.Number*dot + w[n-1]
+		if d.Leaf > 0 {
+			w, sum := p.W[n:], 0.0
+			for _, j := range in.Leaves {
+				sum += w[j]
+			}
+			v += leaf * sum
 		}
-		v += leaf * sum
 		v = min(max(v, -clip), clip) * scale
 		dst[p.A] += v
 		dst[p.B] -= v

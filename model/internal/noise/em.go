@@ -37,7 +37,7 @@ type counts struct {
 }
 
 // fit runs EM on p in place and returns the log-likelihood. weight (n, or nil for ones) weighs rows.
-func fit(d *Data, p *params, s shape, steps int, weight []float64) float64 {
+func fit(d *Data, p *Params, s shape, steps int, weight []float64) float64 {
 	k, n := d.Classes, d.Rows()
 	r := newRow(k)
 	nt := newNewton(d, p)
@@ -47,7 +47,7 @@ func fit(d *Data, p *params, s shape, steps int, weight []float64) float64 {
 		q, gap = make([]float64, n), make([]float64, n)
 	}
 	last := math.Inf(-1)
-	var before *params
+	var before *Params
 	total := float64(n)
 	for step := range steps {
 		nt.reset()
@@ -112,7 +112,7 @@ func fit(d *Data, p *params, s shape, steps int, weight []float64) float64 {
 }
 
 // prior is the log-density, up to a constant, of the weak normal prior that keeps separable tables finite.
-func (p *params) prior() float64 {
+func (p *Params) prior() float64 {
 	v := 0.0
 	for _, a := range p.A {
 		v -= 0.5 * ridgeA * a * a
@@ -124,7 +124,7 @@ func (p *params) prior() float64 {
 }
 
 // count adds one row's expected flips.
-func (p *params) count(c *counts, r *row, o, src int, w float64) {
+func (p *Params) count(c *counts, r *row, o, src int, w float64) {
 	k := len(p.B)
 	g := p.Gamma * r.e
 	// Posterior of z, the label after boundary flips: post holds that of y, which differs only in the swapped share.
@@ -151,7 +151,7 @@ func (p *params) count(c *counts, r *row, o, src int, w float64) {
 }
 
 // zShare is the posterior of z for one of the two top classes.
-func (r *row) zShare(p *params, z, o, src int, g float64) float64 {
+func (r *row) zShare(p *Params, z, o, src int, g float64) float64 {
 	other := r.one + r.two - z
 	factor := 1.0
 	if p.Rho != nil && src >= 0 {
@@ -166,7 +166,7 @@ func (r *row) zShare(p *params, z, o, src int, g float64) float64 {
 	return both * mine / (mine + theirs)
 }
 
-func (p *params) updateFlips(c *counts, s shape, k int) {
+func (p *Params) updateFlips(c *counts, s shape, k int) {
 	switch s.flips {
 	case none, fixed:
 		return
@@ -195,7 +195,7 @@ func (p *params) updateFlips(c *counts, s shape, k int) {
 }
 
 // scaled divides expected flips by the mean source factor, so that Flip keeps meaning "at factor 1".
-func (p *params) scaled(c *counts, off float64) float64 {
+func (p *Params) scaled(c *counts, off float64) float64 {
 	have, want := 0.0, 0.0
 	for s, e := range c.expect {
 		have += e * p.Rho[s]
@@ -207,7 +207,7 @@ func (p *params) scaled(c *counts, off float64) float64 {
 	return off * want / have
 }
 
-func (p *params) meanRate(c *counts, k int) float64 {
+func (p *Params) meanRate(c *counts, k int) float64 {
 	off, n := 0.0, 0.0
 	for i := range k {
 		for j := range k {
@@ -221,7 +221,7 @@ func (p *params) meanRate(c *counts, k int) float64 {
 }
 
 // freeRow sets row i from its counts, drawn a little towards the mean rate.
-func (p *params) freeRow(c *counts, i int, rate float64, only []bool) {
+func (p *Params) freeRow(c *counts, i int, rate float64, only []bool) {
 	k := len(p.B)
 	n := 0.0
 	for j := range k {
@@ -252,7 +252,7 @@ func (p *params) freeRow(c *counts, i int, rate float64, only []bool) {
 }
 
 // sparseRows gives the chosen entries their own rates and all others one rate an entry.
-func (p *params) sparseRows(c *counts, entries []int, k int) {
+func (p *Params) sparseRows(c *counts, entries []int, k int) {
 	chosen := make([]bool, k*k)
 	for _, e := range entries {
 		chosen[e] = true
@@ -303,7 +303,7 @@ func (p *params) sparseRows(c *counts, entries []int, k int) {
 	}
 }
 
-func (p *params) updateSources(c *counts) {
+func (p *Params) updateSources(c *counts) {
 	if p.Rho == nil {
 		return
 	}
@@ -313,7 +313,7 @@ func (p *params) updateSources(c *counts) {
 }
 
 // updateBoundary sets γ in two passes and then tries τ a little smaller and larger.
-func (p *params) updateBoundary(q, gap, weight []float64) {
+func (p *Params) updateBoundary(q, gap, weight []float64) {
 	for range 2 {
 		num, den := 1.0, 4.0
 		for i, m := range gap {

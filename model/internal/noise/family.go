@@ -9,7 +9,7 @@ import (
 // candidate is one fitted model with its evidence.
 type candidate struct {
 	name     string
-	p        *params
+	p        *Params
 	shape    shape
 	ll       float64
 	evidence float64 // ll − penalty + dominance
@@ -17,8 +17,8 @@ type candidate struct {
 }
 
 // start is the common start of every EM.
-func start(d *Data) *params {
-	p := &params{A: make([]float64, len(d.Members)), B: make([]float64, d.Classes), Flip: uniform(d.Classes, 0), Tau: 1.5}
+func start(d *Data) *Params {
+	p := &Params{A: make([]float64, len(d.Members)), B: make([]float64, d.Classes), Flip: uniform(d.Classes, 0), Tau: 1.5}
 	for m := range p.A {
 		p.A[m] = 2 / float64(len(p.A))
 	}
@@ -32,7 +32,7 @@ var singleRates = [...]float64{0.01, 0.02, 0.04, 0.07, 0.10, 0.14, 0.18, 0.22, 0
 const rateSteps = 12
 
 // family fits none, single, free and sparse models from p, and returns them in that order.
-func family(d *Data, p *params, prefix string) []*candidate {
+func family(d *Data, p *Params, prefix string) []*candidate {
 	k := d.Classes
 	out := []*candidate{run(d, p.clone(), prefix+"none", shape{flips: none}, coldSteps)}
 	one := out[0]
@@ -58,7 +58,7 @@ func family(d *Data, p *params, prefix string) []*candidate {
 }
 
 // run fits one model and gives its evidence.
-func run(d *Data, p *params, name string, s shape, steps int) *candidate {
+func run(d *Data, p *Params, name string, s shape, steps int) *candidate {
 	c := &candidate{name: name, p: p, shape: s}
 	c.ll = fit(d, p, s, steps, nil)
 	c.evidence = c.ll - c.penalty(d) + sureness(d, p)
@@ -117,7 +117,7 @@ func (c *candidate) sourcePenalty(d *Data) float64 {
 
 // chosenEntries are the flip matrix entries that the free fit fills far beyond the background rate: those with
 // x·ln(x/E) − (x − E) > 3, x the expected count under the free fit, E that under the single rate.
-func chosenEntries(d *Data, one, all *params) []int {
+func chosenEntries(d *Data, one, all *Params) []int {
 	k := d.Classes
 	x, n := make([]float64, k*k), make([]float64, k)
 	r := newRow(k)

@@ -16,7 +16,8 @@ type Layer struct {
 type Model struct {
 	Name   string
 	Weight float64
-	P      params
+	P      Params
+	shape  shape // lost when the layer is saved: only a trainer refits
 }
 
 // Step says that from gap At on the boundary share is Share.
@@ -65,7 +66,7 @@ func average(k int, all []*candidate) *Layer {
 		}
 		w := math.Exp(c.evidence - best)
 		sum += w
-		l.Models = append(l.Models, Model{Name: c.name, Weight: w, P: *c.p})
+		l.Models = append(l.Models, Model{Name: c.name, Weight: w, P: *c.p, shape: c.shape})
 	}
 	for i := range l.Models {
 		l.Models[i].Weight /= sum

@@ -23,7 +23,7 @@ type newton struct {
 	mean    []float64
 }
 
-func newNewton(d *Data, p *params) *newton {
+func newNewton(d *Data, p *Params) *newton {
 	n := &newton{k: d.Classes, m: len(p.A), l: len(p.Slopes)}
 	dim := n.m + n.l + n.k
 	n.grad = make([]float64, dim)
@@ -39,7 +39,7 @@ func (n *newton) reset() {
 }
 
 // add adds row i.
-func (n *newton) add(p *params, r *row, members [][]float64, i int, w float64) {
+func (n *newton) add(p *Params, r *row, members [][]float64, i int, w float64) {
 	k, f := n.k, n.m+n.l
 	dim := f + k
 	for m := range n.m {
@@ -91,7 +91,7 @@ func (n *newton) add(p *params, r *row, members [][]float64, i int, w float64) {
 
 // step changes p by one Newton step, scaled down where it would leap: at most half of the largest weight and 1 a bias.
 // Weights stay ≥ 0: one that would cross zero is set to zero and the rest is solved again without it.
-func (n *newton) step(p *params) {
+func (n *newton) step(p *Params) {
 	f := n.m + n.l
 	dim := f + n.k
 	for m, a := range p.A {
@@ -161,7 +161,7 @@ func (n *newton) solve(fixed []bool) []float64 {
 	return out
 }
 
-func (n *newton) apply(p *params, delta []float64) {
+func (n *newton) apply(p *Params, delta []float64) {
 	f := n.m + n.l
 	top := 0.1
 	for _, a := range p.A {

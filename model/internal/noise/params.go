@@ -25,29 +25,29 @@ type Data struct {
 // Rows is the number of rows.
 func (d *Data) Rows() int { return len(d.Observed) }
 
-// slope adds −Mu·(L_C − L_D) to class C's logit and the same with the other sign to D's, where L = Σ a_k·S⁽ᵏ⁾: it
+// Slope adds −Mu·(L_C − L_D) to class C's logit and the same with the other sign to D's, where L = Σ a_k·S⁽ᵏ⁾: it
 // flattens or steepens the boundary between two classes that overlap more, or less, than the others.
-type slope struct {
+type Slope struct {
 	C, D int
 	Mu   float64
 }
 
-// params of one noise model.
-type params struct {
+// Params of one noise model.
+type Params struct {
 	A      []float64 // weight of each member
 	B      []float64 // bias of each class
-	Slopes []slope
+	Slopes []Slope
 	Flip   []float64 // k·k: P(observed = j | true = i) before a source's factor
 	Gamma  float64   // strength of boundary flips; 0: none
 	Tau    float64   // their reach in logits
 	Rho    []float64 // factor of each source; nil: no source effect
 }
 
-func (p *params) clone() *params {
+func (p *Params) clone() *Params {
 	q := *p
 	q.A = append([]float64(nil), p.A...)
 	q.B = append([]float64(nil), p.B...)
-	q.Slopes = append([]slope(nil), p.Slopes...)
+	q.Slopes = append([]Slope(nil), p.Slopes...)
 	q.Flip = append([]float64(nil), p.Flip...)
 	if p.Rho != nil {
 		q.Rho = append([]float64(nil), p.Rho...)
@@ -77,7 +77,7 @@ func newRow(k int) *row {
 }
 
 // logits fills lin, eta, prob, gap, one and two from the members' scores; score(m) gives member m's k scores.
-func (p *params) logits(r *row, members [][]float64, i int) {
+func (p *Params) logits(r *row, members [][]float64, i int) {
 	k := len(p.B)
 	clear(r.lin)
 	for m, a := range p.A {
@@ -123,7 +123,7 @@ func (p *params) logits(r *row, members [][]float64, i int) {
 
 // infer fills post, q, back and right for a row with observed class o and source s (−1: none), after logits. It
 // returns the log-likelihood of o.
-func (p *params) infer(r *row, o, s int) float64 {
+func (p *Params) infer(r *row, o, s int) float64 {
 	k := len(p.B)
 	factor := 1.0
 	if p.Rho != nil && s >= 0 {
@@ -163,7 +163,7 @@ func (p *params) infer(r *row, o, s int) float64 {
 }
 
 // flip is P(observed = o | z = y) with the off-diagonals multiplied by factor, the row's total at most maxFlip.
-func (p *params) flip(y, o int, factor float64) float64 {
+func (p *Params) flip(y, o int, factor float64) float64 {
 	k := len(p.B)
 	if factor == 1 {
 		return p.Flip[y*k+o]

@@ -10,7 +10,7 @@ const (
 
 // slopes looks for pairs of classes that overlap in another measure than the rest and adds a slope for each, one after
 // the other, to the single-rate fit. It returns nil when no pair earns one.
-func slopes(d *Data, one *candidate) *params {
+func slopes(d *Data, one *candidate) *Params {
 	if d.Classes < 3 {
 		return nil
 	}
@@ -21,7 +21,7 @@ func slopes(d *Data, one *candidate) *params {
 			break
 		}
 		try := p.clone()
-		try.Slopes = append(try.Slopes, slope{C: c, D: e})
+		try.Slopes = append(try.Slopes, Slope{C: c, D: e})
 		got := fit(d, try, shape{flips: single}, slopeFitSteps, nil)
 		if got < ll+minSlopeGain {
 			break
@@ -35,7 +35,7 @@ func slopes(d *Data, one *candidate) *params {
 }
 
 // bestPair is the pair with the largest score test g²/2h for flattening its boundary (g > 0), or −1, −1.
-func bestPair(d *Data, p *params) (int, int) {
+func bestPair(d *Data, p *Params) (int, int) {
 	k := d.Classes
 	g, h := make([]float64, k*k), make([]float64, k*k)
 	r := newRow(k)

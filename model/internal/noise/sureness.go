@@ -14,7 +14,7 @@ const (
 )
 
 // sureness is the log-density, up to a constant, that the prior gives to the class probabilities of p.
-func sureness(d *Data, p *params) float64 {
+func sureness(d *Data, p *Params) float64 {
 	k, n := d.Classes, d.Rows()
 	prob := make([][]float64, k)
 	for c := range prob {

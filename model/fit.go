@@ -1,0 +1,251 @@
+package model
+
+import (
+	"context"
+	"math/rand/v2"
+	"sync"
+
+	"labelweir/model/internal/chain"
+	"labelweir/model/internal/learn"
+	"labelweir/model/internal/noise"
+)
+
+// fitting is one training under way.
+type fitting struct {
+	*intake
+	opt   Options
+	folds []*learn.Fold // the last one holds nothing out: it judges fresh rows
+	plan  []member
+
+	mu      sync.Mutex // guards scores, linear and done while folds run in parallel
+	votes   [learn.Forests][]float64
+	scores  map[learn.Setting][]float64 // out of fold, by setting
+	linear  map[learn.Setting]learn.Linear
+	tallies []learn.Tally
+	done    int
+}
+
+// newFitting deals the rows into folds; last, if any, is the training this one continues.
+func newFitting(in *intake, o Options, last *fitting) *fitting {
+	f := &fitting{intake: in, opt: o, scores: map[learn.Setting][]float64{}, linear: map[learn.Setting]learn.Linear{}}
+	for i := range f.votes {
+		f.votes[i] = make([]float64, in.data.Rows()*in.data.Classes)
+	}
+	if last != nil {
+		f.folds, f.plan = last.folds, last.plan
+		return f
+	}
+	n := o.Folds
+	if len(in.rows) < smallRows {
+		n *= 2
+	}
+	for i := range n {
+		f.folds = append(f.folds, &learn.Fold{Number: i})
+	}
+	f.folds = append(f.folds, &learn.Fold{Number: wholeFold})
+	return f
+}
+
+// wholeFold is the number of the fold that holds nothing out.
+const wholeFold = 255
+
+// each runs work on the listed folds in parallel and waits. Every fold has its own stream of random numbers.
+func (f *fitting) each(ctx context.Context, phase string, stage uint64, folds []*learn.Fold, work func(*learn.Fold, *rand.Rand, *chain.Scratch)) error {
+	next := make(chan *learn.Fold) // unbuffered: a worker takes what it can do now
+	var wg sync.WaitGroup
+	f.done = 0
+	f.progress(phase, 0, len(folds))
+	for range max(1, min(f.opt.Workers, len(folds))) {
+		wg.Go(func() {
+			var s chain.Scratch
+			for fold := range next {
+				if ctx.Err() == nil {
+					work(fold, rand.New(rand.NewPCG(f.opt.Seed, stage<<8|uint64(fold.Number))), &s)
+				}
+				f.mu.Lock()
+				f.done++
+				f.progress(phase, f.done, len(folds))
+				f.mu.Unlock()
+			}
+		})
+	}
+	for _, fold := range folds {
+		next <- fold
+	}
+	close(next)
+	wg.Wait()
+	return ctx.Err()
+}
+
+func (f *fitting) progress(phase string, done, total int) {
+	if f.opt.Progress != nil {
+		f.opt.Progress(phase, done, total)
+	}
+}
+
+// grow brings the forests of all folds up to date and votes on the held-out rows.
+func (f *fitting) grow(ctx context.Context, stage uint64) error {
+	return f.each(ctx, "trees", stage, f.folds, func(fold *learn.Fold, rng *rand.Rand, _ *chain.Scratch) {
+		fold.Grow(f.data, f.fold, rng)
+		k := f.data.Classes
+		for i, at := range f.fold {
+			if int(at) == fold.Number {
+				for v := range f.votes {
+					fold.Vote(v, i, f.votes[v][i*k:(i+1)*k])
+				}
+			}
+		}
+	})
+}
+
+// solve fits the settings of one design and λ in the listed folds and scores the rows they hold out.
+func (f *fitting) solve(fold *learn.Fold, design int, lambda float64, qs []float64, o chain.PortfolioOptions, rng *rand.Rand, s *chain.Scratch) {
+	linear, tally := fold.Solve(f.data, design, lambda, qs, o, rng, s)
+	f.mu.Lock()
+	f.tallies = learn.AddTally(f.tallies, tally)
+	for i := range linear {
+		set := linear[i].Setting
+		if fold.Number == wholeFold {
+			f.linear[set] = linear[i]
+		} else if f.scores[set] == nil {
+			f.scores[set] = make([]float64, f.data.Rows()*f.data.Classes)
+		}
+	}
+	f.mu.Unlock()
+	if fold.Number == wholeFold {
+		return
+	}
+	k := f.data.Classes
+	var in learn.Input
+	for i := range linear {
+		f.mu.Lock()
+		dst := f.scores[linear[i].Setting]
+		f.mu.Unlock()
+		for r, at := range f.fold {
+			if int(at) == fold.Number {
+				fold.Input(f.data, r, &in)
+				linear[i].Score(&in, dst[r*k:(r+1)*k])
+			}
+		}
+	}
+}
+
+// members are the out-of-fold class scores of the plan.
+func (f *fitting) members() [][]float64 {
+	out := make([][]float64, len(f.plan))
+	for i, m := range f.plan {
+		if m.forest >= 0 {
+			out[i] = f.votes[m.forest]
+		} else {
+			out[i] = f.scores[m.setting]
+		}
+	}
+	return out
+}
+
+// cold searches the plan: λ on the first folds, q on all, and leaves out members without weight.
+func (f *fitting) cold(ctx context.Context) (*noise.Layer, *noise.Facts, error) {
+	if err := f.grow(ctx, 0); err != nil {
+		return nil, nil, err
+	}
+	held := f.folds[:len(f.folds)-1]
+	trial := held[:(2*len(held)+4)/5]
+	none := chain.PortfolioOptions{}
+	err := f.each(ctx, "search", 1, trial, func(fold *learn.Fold, rng *rand.Rand, s *chain.Scratch) {
+		for i := range learn.Designs {
+			for _, lambda := range learn.Designs[i].Lambdas {
+				f.solve(fold, i, lambda, learn.Qs[:], none, rng, s)
+			}
+		}
+	})
+	if err != nil {
+		return nil, nil, err
+	}
+	var rows []int32
+	for i, at := range f.fold {
+		if int(at) < len(trial) {
+			rows = append(rows, int32(i))
+		}
+	}
+	first := f.choose(f.scores, rows)
+	err = f.each(ctx, "chains", 2, held[len(trial):], func(fold *learn.Fold, rng *rand.Rand, s *chain.Scratch) {
+		for _, set := range first {
+			f.solve(fold, set.Design, set.Lambda, learn.Qs[:], none, rng, s)
+		}
+	})
+	if err != nil {
+		return nil, nil, err
+	}
+	full := map[learn.Setting][]float64{}
+	for _, set := range first {
+		for _, q := range learn.Qs {
+			set.Q = q
+			full[set] = f.scores[set]
+		}
+	}
+	f.plan = []member{{forest: learn.Raw}, {forest: learn.Cleaned}}
+	for _, set := range f.choose(full, nil) {
+		f.plan = append(f.plan, member{forest: -1, setting: set})
+	}
+	f.progress("noise", 0, 1)
+	data := f.subset(nil, f.members()...)
+	layer, facts := noise.Fit(data)
+	f.leaveOut(layer, data)
+	f.progress("noise", 1, 1)
+	return layer, facts, f.whole(ctx)
+}
+
+// leaveOut drops members that do not move the logits.
+func (f *fitting) leaveOut(l *noise.Layer, d *noise.Data) {
+	var at []int
+	var plan []member
+	for i, m := range f.plan {
+		if l.Spread(d, i) >= fewest {
+			at, plan = append(at, i), append(plan, m)
+		}
+	}
+	if len(at) == 0 {
+		return
+	}
+	l.Keep(at)
+	f.plan = plan
+}
+
+// whole fits the plan on all rows, for fresh ones.
+func (f *fitting) whole(ctx context.Context) error {
+	return f.each(ctx, "whole", 3, f.folds[len(f.folds)-1:], func(fold *learn.Fold, rng *rand.Rand, s *chain.Scratch) {
+		o := chain.QuickPortfolio(f.data.Rows())
+		o.Anneals, o.Anneal = 1, chain.DefaultAnneal()
+		for _, m := range f.plan {
+			if m.forest < 0 {
+				f.solve(fold, m.setting.Design, m.setting.Lambda, []float64{m.setting.Q}, o, rng, s)
+			}
+		}
+	})
+}
+
+// warm refits the plan of the last training.
+func (f *fitting) warm(ctx context.Context, stage uint64, last *noise.Layer) (*noise.Layer, *noise.Facts, error) {
+	if err := f.grow(ctx, stage<<2); err != nil {
+		return nil, nil, err
+	}
+	o := chain.PortfolioOptions{WarmEpochs: 5, Hysteresis: 1e-3}
+	err := f.each(ctx, "chains", stage<<2|1, f.folds, func(fold *learn.Fold, rng *rand.Rand, s *chain.Scratch) {
+		for _, m := range f.plan {
+			if m.forest < 0 {
+				o := o
+				if fold.Number == wholeFold {
+					o.Hops = 2
+				}
+				f.solve(fold, m.setting.Design, m.setting.Lambda, []float64{m.setting.Q}, o, rng, s)
+			}
+		}
+	})
+	if err != nil {
+		return nil, nil, err
+	}
+	f.progress("noise", 0, 1)
+	layer, facts := noise.Refit(f.subset(nil, f.members()...), last)
+	f.progress("noise", 1, 1)
+	return layer, facts, nil
+}

@@ -1,0 +1,122 @@
+package learn
+
+import (
+	"math/rand/v2"
+
+	"labelweir/model/internal/forest"
+	"labelweir/model/internal/noise"
+)
+
+// Fold is one scorer in the making and what its next fit can start from. It belongs to one goroutine at a time.
+type Fold struct {
+	Number int // rows of this fold are held out; a number no row has: none is
+
+	trees  [Forests][]*forest.Tree
+	next   int                     // tree to be regrown first
+	Forest [Forests]*forest.Forest // of the last fit
+	leaves [Forests][]int32        // N·trees leaf ids of all rows, held out or not
+	train  []int32                 // rows trained on
+	runs   map[run]*done
+}
+
+// TreeCount is the number of trees of each forest for n rows: more where they are cheap.
+func TreeCount(n int) int { return min(max(400000/max(n, 1), 100), 300) }
+
+// regrow is the share of the trees that a warm fit replaces, oldest first.
+const regrow = 0.1
+
+// Grow brings the fold's forests up to date with d: all trees anew on a cold fit, some on a warm one. fold gives each
+// row's fold.
+func (f *Fold) Grow(d *Data, fold []uint8, rng *rand.Rand) {
+	f.train = f.train[:0]
+	for i, k := range fold {
+		if int(k) != f.Number {
+			f.train = append(f.train, int32(i))
+		}
+	}
+	n := TreeCount(d.Rows())
+	first, count := 0, n
+	if d.Old != nil && len(f.trees[Raw]) > 0 {
+		n = len(f.trees[Raw])
+		first, count = f.next, max(1, int(regrow*float64(n)))
+	} else {
+		for i := range f.trees {
+			f.trees[i] = make([]*forest.Tree, n)
+			f.leaves[i] = nil
+		}
+	}
+	o := forest.Options{MaxDepth: 30, MinLeaf: 1 + len(f.train)/4000}
+	rows := forest.Rows{At: f.train, Key: make([]uint64, len(f.train)), Label: make([]int32, len(f.train))}
+	for i, r := range f.train {
+		rows.Key[i], rows.Label[i] = d.Keys[r], d.Labels[r]
+	}
+	f.replace(Raw, first, forest.Grow(d.Bins, rows, d.Classes, count, o, rng))
+	f.walk(Raw, d, first, count)
+	rows.Chance = f.clean(d, rows)
+	f.replace(Cleaned, first, forest.Grow(d.Bins, rows, d.Classes, count, o, rng))
+	f.walk(Cleaned, d, first, count)
+	f.next = (first + count) % n
+}
+
+// replace puts new trees in the places from first on, round the end.
+func (f *Fold) replace(which, first int, trees []*forest.Tree) {
+	all := append([]*forest.Tree(nil), f.trees[which]...)
+	for i, t := range trees {
+		all[(first+i)%len(all)] = t
+	}
+	f.trees[which] = all
+}
+
+// walk brings the leaf ids up to date: those of known rows in old trees are carried over.
+func (f *Fold) walk(which int, d *Data, first, count int) {
+	was, ids := f.Forest[which], f.leaves[which]
+	fo := forest.New(d.Classes, f.trees[which])
+	n, t := d.Rows(), len(fo.Trees)
+	out := make([]int32, n*t)
+	fresh := make([]bool, t)
+	for i := range count {
+		fresh[(first+i)%t] = true
+	}
+	for i := range n {
+		row, bins := out[i*t:(i+1)*t], d.Bins.Row(i)
+		if ids == nil || d.Old == nil || d.Old[i] < 0 {
+			fo.Walk(bins, row)
+			continue
+		}
+		old := ids[int(d.Old[i])*t : int(d.Old[i]+1)*t]
+		for j := range row {
+			if fresh[j] {
+				row[j] = fo.First[j] + fo.Trees[j].Leaf(bins)
+			} else {
+				row[j] = old[j] - was.First[j] + fo.First[j]
+			}
+		}
+	}
+	f.Forest[which], f.leaves[which] = fo, out
+}
+
+// clean says how probable each class is for each training row, as the out-of-bag votes of the raw forest and a quick
+// noise fit see it. Nothing of the fold's held-out rows comes in.
+func (f *Fold) clean(d *Data, rows forest.Rows) []float64 {
+	k, n := d.Classes, len(rows.At)
+	nd := &noise.Data{Classes: k, Observed: rows.Label, Members: [][]float64{make([]float64, n*k)}}
+	if d.Source != nil {
+		nd.Sources = d.Sources
+		nd.Source = make([]int32, n)
+		for i, r := range rows.At {
+			nd.Source[i] = d.Source[r]
+		}
+	}
+	fo := f.Forest[Raw]
+	t := len(fo.Trees)
+	for i, r := range rows.At {
+		dst := nd.Members[0][i*k : (i+1)*k]
+		key := rows.Key[i]
+		fo.Vote(f.leaves[Raw][int(r)*t:int(r+1)*t], func(t int) bool { return fo.Trees[t].InBag(key) }, dst)
+		logShares(dst, t)
+	}
+	layer, _ := noise.Quick(nd)
+	chance := make([]float64, n*k)
+	layer.Clean(nd, chance)
+	return chance
+}

@@ -1,0 +1,208 @@
+package learn
+
+import (
+	"math"
+	"math/rand/v2"
+	"slices"
+
+	"labelweir/model/internal/chain"
+)
+
+// run names one optimisation: a design, λ and a pair of classes.
+type run struct {
+	design int
+	lambda float64
+	a, b   int
+}
+
+// done is what a run left: its rows and, for each q it was solved at, its state.
+type done struct {
+	rows   []int32
+	labels []int8
+	states map[float64]*chain.State
+}
+
+// Tally counts what one kind of chain did.
+type Tally struct {
+	Name       string
+	Tried, Won int
+	Gap        float64 // sum over its tries of (J − best J)/best J
+}
+
+// AddTally adds more to all, by name.
+func AddTally(all, more []Tally) []Tally {
+	for _, m := range more {
+		at := slices.IndexFunc(all, func(t Tally) bool { return t.Name == m.Name })
+		if at < 0 {
+			all = append(all, Tally{Name: m.Name})
+			at = len(all) - 1
+		}
+		all[at].Tried += m.Tried
+		all[at].Won += m.Won
+		all[at].Gap += m.Gap
+	}
+	return all
+}
+
+// Solve fits linear scorers of one design and λ at every q of qs: along one graduated run when cold, from the last
+// states when warm, each then followed by the portfolio's other chains, if o asks for any. It returns with them how the
+// chains did.
+func (f *Fold) Solve(d *Data, design int, lambda float64, qs []float64, o chain.PortfolioOptions, rng *rand.Rand, s *chain.Scratch) ([]Linear, []Tally) {
+	out := make([]Linear, len(qs))
+	for j, q := range qs {
+		out[j].Setting = Setting{design, lambda, q}
+	}
+	if k := Designs[design].Kernel; k > 0 && d.Kernels[k-1] == nil {
+		return nil, nil
+	}
+	m := f.matrix(d, &Designs[design])
+	if f.runs == nil {
+		f.runs = make(map[run]*done)
+	}
+	var tally []Tally
+	for a := range d.Classes {
+		for b := a + 1; b < d.Classes; b++ {
+			p := f.pair(d, m, a, b, lambda)
+			if p == nil {
+				continue
+			}
+			r := run{design, lambda, a, b}
+			states := f.solve(d, p, f.runs[r], qs, o, &tally, rng, s)
+			f.runs[r] = keep(f.train, p, qs, states)
+			for j := range qs {
+				out[j].Pairs = append(out[j].Pairs, Pair{A: a, B: b, W: states[j].W})
+			}
+		}
+	}
+	return out, tally
+}
+
+// keep remembers states by the rows of the data.
+func keep(train []int32, p *chain.Problem, qs []float64, states []chain.State) *done {
+	o := &done{rows: make([]int32, len(p.Rows)), labels: p.Y, states: make(map[float64]*chain.State)}
+	for i, r := range p.Rows {
+		o.rows[i] = train[r]
+	}
+	for j, q := range qs {
+		o.states[q] = &states[j]
+	}
+	return o
+}
+
+func (f *Fold) solve(d *Data, p *chain.Problem, last *done, qs []float64, o chain.PortfolioOptions, tally *[]Tally, rng *rand.Rand, s *chain.Scratch) []chain.State {
+	var index []int32
+	var changed []bool
+	if d.Old != nil && last != nil {
+		index, changed = carried(d, f.train, p, last)
+	} else if o.Anneals == 0 && o.Hops == 0 {
+		*tally = AddTally(*tally, []Tally{{Name: chain.NameGraduated, Tried: len(qs), Won: len(qs)}})
+		return chain.Graduated(p, nil, qs, rng, s)
+	}
+	out := make([]chain.State, len(qs))
+	for j, q := range qs {
+		var from *chain.State
+		if index != nil && last.states[q] != nil {
+			st := chain.Carry(p, q, last.states[q], index, changed, s)
+			from = &st
+		}
+		runs, use := chain.Portfolio(p, q, from, o, rng, s)
+		out[j] = runs[use].State
+		*tally = AddTally(*tally, tallied(runs))
+	}
+	return out
+}
+
+func tallied(runs []chain.Run) []Tally {
+	win := chain.Winner(runs)
+	best := runs[win].State.J
+	out := make([]Tally, len(runs))
+	for i, r := range runs {
+		out[i] = Tally{Name: r.Name, Tried: 1}
+		if best > 0 {
+			out[i].Gap = max(0, r.State.J/best-1)
+		}
+	}
+	out[win].Won = 1
+	return out
+}
+
+// carried finds, for each row of p, its entry in the problem solved before.
+func carried(d *Data, train []int32, p *chain.Problem, last *done) (index []int32, changed []bool) {
+	top := int32(-1)
+	for _, r := range last.rows {
+		top = max(top, r)
+	}
+	at := make([]int32, top+1)
+	for i := range at {
+		at[i] = -1
+	}
+	for i, r := range last.rows {
+		at[r] = int32(i)
+	}
+	index, changed = make([]int32, len(p.Rows)), make([]bool, len(p.Rows))
+	for i, r := range p.Rows {
+		index[i] = -1
+		old := d.Old[train[r]]
+		if old < 0 || old > top || at[old] < 0 {
+			continue
+		}
+		index[i] = at[old]
+		changed[i] = last.labels[at[old]] != p.Y[i]
+	}
+	return index, changed
+}
+
+// matrix is the design matrix of the training rows.
+func (f *Fold) matrix(d *Data, des *Design) *chain.Design {
+	n, x, wide := len(f.train), d.X, d.Dense
+	if des.Kernel > 0 {
+		x, wide = d.Smooth[des.Kernel-1], d.Kernels[des.Kernel-1].Size()+1
+	}
+	m := &chain.Design{N: n, Dense: wide, X: make([]float32, n*wide)}
+	for i, r := range f.train {
+		dst, src := m.X[i*wide:(i+1)*wide], x[int(r)*wide:int(r+1)*wide]
+		for j, v := range src {
+			dst[j] = v * float32(des.Number)
+		}
+		dst[wide-1] = 1
+	}
+	if des.Leaf > 0 {
+		fo, ids := f.Forest[Cleaned], f.leaves[Cleaned]
+		t := len(fo.Trees)
+		m.Trees, m.LeafCols, m.LeafValue = t, fo.Leaves(), des.Leaf/math.Sqrt(float64(t))
+		m.Leaves = make([]int32, n*t)
+		for i, r := range f.train {
+			copy(m.Leaves[i*t:(i+1)*t], ids[int(r)*t:int(r+1)*t])
+		}
+	}
+	return m
+}
+
+// pair is the problem of classes a (+1) and b (−1) by observed label, both with equal total weight; nil when a class
+// has no row.
+func (f *Fold) pair(d *Data, m *chain.Design, a, b int, lambda float64) *chain.Problem {
+	p := &chain.Problem{Design: m, Lambda: lambda}
+	na, nb := 0, 0
+	for i, r := range f.train {
+		switch d.Labels[r] {
+		case int32(a):
+			p.Rows, p.Y = append(p.Rows, int32(i)), append(p.Y, 1)
+			na++
+		case int32(b):
+			p.Rows, p.Y = append(p.Rows, int32(i)), append(p.Y, -1)
+			nb++
+		}
+	}
+	if na == 0 || nb == 0 {
+		return nil
+	}
+	p.Omega = make([]float64, len(p.Rows))
+	for i, y := range p.Y {
+		if y > 0 {
+			p.Omega[i] = 0.5 / float64(na)
+		} else {
+			p.Omega[i] = 0.5 / float64(nb)
+		}
+	}
+	return p
+}
