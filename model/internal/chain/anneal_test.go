@@ -89,7 +89,7 @@ func TestAnnealerFindsTheProvenOptimum(t *testing.T) {
 		p, b := small(rng, most)
 		q := qs[rng.IntN(3)]
 		want := enumerate(p, q, 1/math.Sqrt(p.Lambda), b)
-		opt := AnnealOptions{Bits: b, Sweeps: 1000, Cycles: 24, Hot: .3, Cold: 3e-3, Bounded: true}
+		opt := AnnealOptions{Bits: b, Sweeps: 1000, Cycles: 20, Hot: .3, Cold: 3e-3, Bounded: true}
 		got := Annealed(p, q, nil, opt, rng, &Scratch{})
 		if j := objective(p, q, got.W); math.Abs(j-got.J) > 1e-9 {
 			t.Fatalf("instance %d: J=%v, from its weights %v", k, got.J, j)
