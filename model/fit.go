@@ -214,10 +214,13 @@ func (f *fitting) leaveOut(l *noise.Layer, d *noise.Data) {
 // whole fits the plan on all rows, for fresh ones.
 func (f *fitting) whole(ctx context.Context) error {
 	return f.each(ctx, "whole", 3, f.folds[len(f.folds)-1:], func(fold *learn.Fold, rng *rand.Rand, s *chain.Scratch) {
-		o := chain.QuickPortfolio(f.data.Rows())
-		o.Anneals, o.Anneal = 1, chain.DefaultAnneal()
 		for _, m := range f.plan {
 			if m.forest < 0 {
+				o := chain.PortfolioOptions{Hops: 2, Hysteresis: 1e-3}
+				if learn.Designs[m.setting.Design].Leaf == 0 {
+					// Annealing visits every weight bit, and leaves have too many.
+					o.Anneals, o.Anneal = 1, chain.DefaultAnneal()
+				}
 				f.solve(fold, m.setting.Design, m.setting.Lambda, []float64{m.setting.Q}, o, rng, s)
 			}
 		}

@@ -17,10 +17,11 @@ type Rows struct {
 type Options struct {
 	MaxDepth int
 	MinLeaf  int // fewest in-bag rows of a leaf
+	Cuts     int // random cuts tried of each candidate feature, at least 1
 }
 
-// Grow grows n trees. Each is grown on a random 63 % of the rows; of √D random features, each with one random cut, a
-// node takes the one with the best class-balanced Gini criterion. Cost O(n · len(rows) · √D · depth).
+// Grow grows n trees. Each is grown on a random 63 % of the rows; of √D random features, each with Cuts random cuts,
+// a node takes the one with the best class-balanced Gini criterion. Cost O(n · len(rows) · √D · depth).
 func Grow(b *Bins, rows Rows, classes, n int, o Options, rng *rand.Rand) []*Tree {
 	g := &grower{b: b, rows: rows.At, labels: rows.Label, chance: rows.Chance, o: o, rng: rng, k: classes,
 		tries:  int(math.Ceil(math.Sqrt(float64(b.D)))),
@@ -144,14 +145,20 @@ func (g *grower) split(s span) (feature int, cut uint8, ok bool) {
 	for try := 0; valid < g.tries && try < 4*g.tries+8; try++ {
 		d := g.rng.IntN(g.b.D)
 		col := g.b.Cols[d]
-		at := col[g.rows[in[g.rng.IntN(len(in))]]]
-		n := g.countLeft(in, col, at)
-		if n < g.o.MinLeaf || len(in)-n < g.o.MinLeaf || n == 0 || n == len(in) {
-			continue
+		varies := false
+		for range g.o.Cuts {
+			at := col[g.rows[in[g.rng.IntN(len(in))]]]
+			n := g.countLeft(in, col, at)
+			if n < g.o.MinLeaf || len(in)-n < g.o.MinLeaf || n == 0 || n == len(in) {
+				continue
+			}
+			varies = true
+			if v := g.gain(); v > best {
+				best, feature, cut, ok = v, d, at, true
+			}
 		}
-		valid++
-		if v := g.gain(); v > best {
-			best, feature, cut, ok = v, d, at, true
+		if varies {
+			valid++
 		}
 	}
 	return feature, cut, ok

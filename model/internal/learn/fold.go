@@ -20,7 +20,10 @@ type Fold struct {
 }
 
 // TreeCount is the number of trees of each forest for n rows: more where they are cheap.
-func TreeCount(n int) int { return min(max(400000/max(n, 1), 100), 300) }
+func TreeCount(n int) int { return min(max(200000/max(n, 1), 100), 200) }
+
+// fewRows is below how many training rows the raw forest takes the time to look for better cuts.
+const fewRows = 8000
 
 // regrow is the share of the trees that a warm fit replaces, oldest first.
 const regrow = 0.1
@@ -45,14 +48,17 @@ func (f *Fold) Grow(d *Data, fold []uint8, rng *rand.Rand) {
 			f.leaves[i] = nil
 		}
 	}
-	o := forest.Options{MaxDepth: 30, MinLeaf: 1 + len(f.train)/4000}
+	o := forest.Options{MaxDepth: 30, MinLeaf: 1 + len(f.train)/4000, Cuts: 1}
+	if len(f.train) < fewRows {
+		o.Cuts = 4
+	}
 	rows := forest.Rows{At: f.train, Key: make([]uint64, len(f.train)), Label: make([]int32, len(f.train))}
 	for i, r := range f.train {
 		rows.Key[i], rows.Label[i] = d.Keys[r], d.Labels[r]
 	}
 	f.replace(Raw, first, forest.Grow(d.Bins, rows, d.Classes, count, o, rng))
 	f.walk(Raw, d, first, count)
-	rows.Chance = f.clean(d, rows)
+	rows.Chance, o.Cuts = f.clean(d, rows), 1
 	f.replace(Cleaned, first, forest.Grow(d.Bins, rows, d.Classes, count, o, rng))
 	f.walk(Cleaned, d, first, count)
 	f.next = (first + count) % n

@@ -74,7 +74,7 @@ func fit(d *Data, p *Params, s shape, steps int, weight []float64) float64 {
 				q[i], gap[i] = r.q, r.gap
 			}
 		}
-		ll += p.prior()
+		ll += p.prior(nt.size)
 		if ll < last && before != nil && step < steps-1 {
 			// The Newton step went too far: go half the way.
 			half := math.Inf(-1)
@@ -112,10 +112,12 @@ func fit(d *Data, p *Params, s shape, steps int, weight []float64) float64 {
 }
 
 // prior is the log-density, up to a constant, of the weak normal prior that keeps separable tables finite.
-func (p *Params) prior() float64 {
+func (p *Params) prior(size []float64) float64 {
 	v := 0.0
-	for _, a := range p.A {
-		v -= 0.5 * ridgeA * a * a
+	mean := p.meanShare(size)
+	for m, a := range p.A {
+		u := a*size[m] - mean
+		v -= 0.5*ridgeA*a*a + 0.5*likeness*u*u
 	}
 	for _, b := range p.B {
 		v -= 0.5 * ridgeB * b * b

@@ -11,6 +11,10 @@ const (
 	ridgeA  = 0.01
 	ridgeB  = 0.1
 	ridgeMu = 1
+
+	// likeness draws the members' shares of the logits, weight times root mean square score, together: with few rows
+	// all members count about alike, with many the likelihood decides.
+	likeness = 8
 )
 
 // newton gathers gradient and Hessian of Σ post·log softmax(η) in the member weights, biases and slopes over one pass
@@ -21,6 +25,7 @@ type newton struct {
 	hess    []float64 // full, dim×dim, the negative Hessian
 	x       []float64 // dim·k: ∂η_c/∂θ of the current row, for members and slopes only
 	mean    []float64
+	size    []float64 // root mean square score of each member
 }
 
 func newNewton(d *Data, p *Params) *newton {
@@ -30,7 +35,30 @@ func newNewton(d *Data, p *Params) *newton {
 	n.hess = make([]float64, dim*dim)
 	n.x = make([]float64, (n.m+n.l)*n.k)
 	n.mean = make([]float64, n.m+n.l)
+	n.size = d.sizes()
 	return n
+}
+
+// sizes are the root mean square scores of the members.
+func (d *Data) sizes() []float64 {
+	out := make([]float64, len(d.Members))
+	for m, x := range d.Members {
+		s := 0.0
+		for _, v := range x {
+			s += v * v
+		}
+		out[m] = math.Sqrt(s / float64(max(1, len(x))))
+	}
+	return out
+}
+
+// meanShare is the mean of the members' weights times their sizes.
+func (p *Params) meanShare(size []float64) float64 {
+	v := 0.0
+	for m, a := range p.A {
+		v += a * size[m]
+	}
+	return v / float64(max(1, len(p.A)))
 }
 
 func (n *newton) reset() {
@@ -94,9 +122,13 @@ func (n *newton) add(p *Params, r *row, members [][]float64, i int, w float64) {
 func (n *newton) step(p *Params) {
 	f := n.m + n.l
 	dim := f + n.k
+	mean := p.meanShare(n.size)
 	for m, a := range p.A {
-		n.grad[m] -= ridgeA * a
-		n.hess[m*dim+m] += ridgeA
+		n.grad[m] -= ridgeA*a + likeness*n.size[m]*(a*n.size[m]-mean)
+		for h := 0; h <= m; h++ {
+			n.hess[h*dim+m] -= likeness * n.size[h] * n.size[m] / float64(n.m)
+		}
+		n.hess[m*dim+m] += ridgeA + likeness*n.size[m]*n.size[m]
 	}
 	for l, s := range p.Slopes {
 		n.grad[n.m+l] -= ridgeMu * s.Mu
