@@ -35,7 +35,7 @@ func (in *intake) carry(t *Table, last *intake) {
 	}
 	d, was := in.data, last.data
 	d.Old = make([]int32, len(in.rows))
-	in.encoder, d.Kernels = last.encoder, was.Kernels
+	in.encoder, d.Kernels, d.Pairs = last.encoder, was.Kernels, was.Pairs
 	in.allocate()
 	cols := in.columns(t)
 	for i, k := range d.Keys {

@@ -148,8 +148,9 @@ func (f *fitting) cold(ctx context.Context) (*noise.Layer, *noise.Facts, error) 
 	if err := f.grow(ctx, 0); err != nil {
 		return nil, nil, err
 	}
+	learn.ChoosePairs(f.data, f.votes[learn.Raw])
 	held := f.folds[:len(f.folds)-1]
-	trial := held[:(2*len(held)+4)/5]
+	trial := held[:f.trials(len(held))]
 	none := chain.PortfolioOptions{}
 	err := f.each(ctx, "search", 1, trial, func(fold *learn.Fold, rng *rand.Rand, s *chain.Scratch) {
 		for i := range learn.Designs {
@@ -194,6 +195,20 @@ func (f *fitting) cold(ctx context.Context) (*noise.Layer, *noise.Facts, error) 
 	f.progress("noise", 1, 1)
 	return layer, facts, f.whole(ctx)
 }
+
+// trials is the number of folds, of so many, on which λ is searched: enough for trialRows held-out rows, at most two in
+// five.
+func (f *fitting) trials(folds int) int {
+	most := (2*folds + 4) / 5
+	for n := 1; n < most; n++ {
+		if n*len(f.rows)/folds >= trialRows {
+			return n
+		}
+	}
+	return most
+}
+
+const trialRows = 1200
 
 // leaveOut drops members that do not move the logits.
 func (f *fitting) leaveOut(l *noise.Layer, d *noise.Data) {

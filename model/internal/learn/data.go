@@ -20,6 +20,9 @@ type Data struct {
 	Source  []int32       // N, or nil without sources
 	Sources int
 
+	// Pairs are the pairs of classes, first below second, that linear scorers tell apart; see ChoosePairs.
+	Pairs [][2]int
+
 	// Old is, for each row, its index in the data of the fit before, or −1; nil on a cold fit.
 	Old []int32
 }

@@ -60,18 +60,16 @@ func (f *Fold) Solve(d *Data, design int, lambda float64, qs []float64, o chain.
 		f.runs = make(map[run]*done)
 	}
 	var tally []Tally
-	for a := range d.Classes {
-		for b := a + 1; b < d.Classes; b++ {
-			p := f.pair(d, m, a, b, lambda)
-			if p == nil {
-				continue
-			}
-			r := run{design, lambda, a, b}
-			states := f.solve(d, p, f.runs[r], qs, o, &tally, rng, s)
-			f.runs[r] = keep(f.train, p, qs, states)
-			for j := range qs {
-				out[j].Pairs = append(out[j].Pairs, Pair{A: a, B: b, W: states[j].W})
-			}
+	for _, ab := range d.Pairs {
+		p := f.pair(d, m, ab[0], ab[1], lambda)
+		if p == nil {
+			continue
+		}
+		r := run{design, lambda, ab[0], ab[1]}
+		states := f.solve(d, p, f.runs[r], qs, o, &tally, rng, s)
+		f.runs[r] = keep(f.train, p, qs, states)
+		for j := range qs {
+			out[j].Pairs = append(out[j].Pairs, Pair{A: ab[0], B: ab[1], W: states[j].W})
 		}
 	}
 	return out, tally

@@ -70,7 +70,8 @@ func logShares(v []float64, trees int) {
 // clip bounds a pair's decision in a class score.
 const clip = 3
 
-// Score writes the class scores of l: 2/k times the sum of its clipped pair decisions. len(dst) = k.
+// Score writes the class scores of l: of each class twice the sum of its clipped pair decisions, over one more than
+// the mean number of a class's pairs: 2/k times the sum where all pairs are there. len(dst) = k.
 func (l *Linear) Score(in *Input, dst []float64) {
 	d := &Designs[l.Design]
 	clear(dst)
@@ -83,7 +84,7 @@ func (l *Linear) Score(in *Input, dst []float64) {
 	if d.Leaf > 0 {
 		leaf = d.Leaf / math.Sqrt(float64(len(in.Leaves)))
 	}
-	scale := 2 / float64(len(dst))
+	scale := 2 / float64(1+2*len(l.Pairs)/len(dst))
 	for k := range l.Pairs {
 		p := &l.Pairs[k]
 		w := p.W[:n]
