@@ -4,17 +4,26 @@ import (
 	"testing"
 )
 
-// The real model behind the pipeline: planted wrong labels on well-separated grades are found, with the whole input as one window,
-// and what comes out does not depend on batches and workers. The truth is the one that was planted.
+// The real model behind the pipeline: planted wrong labels on well-separated grades are found, with the whole input as
+// one window, with a sample of it, and with a window that slides (cold and warm fits), and what comes out does not depend
+// on batches and workers. The truth is the one that was planted.
 func TestRealModelFindsPlantedWrongLabels(t *testing.T) {
 	if raceDetector {
 		t.Skip("training under the race detector belongs to the tests of package model")
 	}
 	for name, change := range map[string]func(*Config){
-		"whole": func(c *Config) {},
+		"whole":         func(c *Config) {},
+		"whole sampled": func(c *Config) { c.Records = 700 },
+		"sliding": func(c *Config) {
+			c.Sliding, c.Records, c.Hold, c.Retrain = true, 700, 100, Every{Rows: 300}
+		},
 	} {
 		t.Run(name, func(t *testing.T) {
-			apples := pack(400, 0.1, 0, 8)
+			rows := 1500
+			if name == "whole" {
+				rows = 400
+			}
+			apples := pack(rows, 0.1, 0, 8)
 			r := newRun(apples, change)
 			r.sweep.Learner = nil
 			want := r.do(t).outcome(t)
