@@ -56,25 +56,57 @@ func plan(s settings) ([]job, error) {
 // remaining cells carry its error.
 func runAll(ctx context.Context, jobs []job, procs int, fit fitter, progress io.Writer) []figures {
 	out := make([]figures, len(jobs))
+	sideBySide(len(jobs), procs, progress, func(i int) string {
+		out[i] = judgeCell(ctx, jobs[i], fit)
+		return out[i].line()
+	})
+	return out
+}
+
+// runStreams goes through the streams that the settings ask for.
+func runStreams(ctx context.Context, s settings, progress io.Writer) ([]streamFigures, error) {
+	names := s.tables
+	if len(names) == 0 {
+		var err error
+		if names, err = panel.StreamNames(s.dir); err != nil {
+			return nil, err
+		}
+	}
+	streams := make([]*panel.Stream, len(names))
+	for i, name := range names {
+		var err error
+		if streams[i], err = panel.OpenStream(s.dir, name); err != nil {
+			return nil, err
+		}
+	}
+	out := make([]streamFigures, len(streams))
+	sideBySide(len(streams), s.procs, progress, func(i int) string {
+		out[i] = judgeStream(ctx, streams[i], s.sliding)
+		return out[i].line()
+	})
+	return out, nil
+}
+
+// sideBySide does work for 0 ≤ i < n on procs goroutines, and writes the line that each gives.
+func sideBySide(n, procs int, progress io.Writer, work func(i int) string) {
 	next := make(chan int) // no capacity: a worker takes a job when it is free
 	var wg sync.WaitGroup
 	var mu sync.Mutex // guards done and progress
 	done := 0
-	for range min(procs, len(jobs)) {
+	for range min(procs, n) {
 		wg.Go(func() {
 			for i := range next {
-				out[i] = judgeCell(ctx, jobs[i], fit)
+				line := work(i)
 				mu.Lock()
 				done++
-				fmt.Fprintf(progress, "%d/%d %s\n", done, len(jobs), out[i].line())
+				fmt.Fprintf(progress, "%d/%d %s\n", done, n, line)
 				mu.Unlock()
 			}
 		})
 	}
-	for i := range jobs {
+	for i := range n {
 		next <- i
 	}
 	close(next)
 	wg.Wait()
-	return out
 }

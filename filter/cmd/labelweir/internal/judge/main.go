@@ -5,6 +5,8 @@
 //
 // Each cell, a table with the noise of one plan and seed, is fitted once; the figures are means over the seeds.
 // --out keeps every cell's figures in a file, and --compare tells what moved against such a file.
+//
+// With --streams the panel's streams are gone through instead, with a sliding window, each row judged as it arrives.
 package main
 
 import (
@@ -31,6 +33,8 @@ type settings struct {
 	procs         int
 	out, compare  string
 	profile       string
+	streams       bool
+	sliding       sliding
 }
 
 func main() {
@@ -47,6 +51,42 @@ func run(ctx context.Context, args []string, stdout, stderr io.Writer) error {
 	if err != nil {
 		return err
 	}
+	if s.profile != "" {
+		w, err := os.Create(s.profile)
+		if err != nil {
+			return err
+		}
+		defer w.Close()
+		if err := pprof.StartCPUProfile(w); err != nil {
+			return err
+		}
+		defer pprof.StopCPUProfile()
+	}
+	if s.streams {
+		return overStreams(ctx, s, stdout, stderr)
+	}
+	return overTables(ctx, s, stdout, stderr)
+}
+
+func overStreams(ctx context.Context, s settings, stdout, stderr io.Writer) error {
+	base, err := panel.ReadStreamBaselines(s.dir)
+	if err != nil {
+		return err
+	}
+	streams, err := runStreams(ctx, s, stderr)
+	if err != nil {
+		return err
+	}
+	if err := reportStreams(stdout, streams, base); err != nil {
+		return err
+	}
+	if s.out != "" {
+		return writeStreams(s.out, streams)
+	}
+	return nil
+}
+
+func overTables(ctx context.Context, s settings, stdout, stderr io.Writer) error {
 	base, err := panel.ReadBaselines(filepath.Join(s.dir, "baselines.tsv"))
 	if err != nil {
 		return err
@@ -61,18 +101,7 @@ func run(ctx context.Context, args []string, stdout, stderr io.Writer) error {
 			return err
 		}
 	}
-	if s.profile != "" {
-		w, err := os.Create(s.profile)
-		if err != nil {
-			return err
-		}
-		defer w.Close()
-		if err := pprof.StartCPUProfile(w); err != nil {
-			return err
-		}
-		defer pprof.StopCPUProfile()
-	}
-	cells := runAll(ctx, jobs, s.procs, fitModel, stderr)
+	cells := runAll(ctx, jobs, s.procs, sweepTable, stderr)
 	if err := report(stdout, cells, base); err != nil {
 		return err
 	}
@@ -89,11 +118,15 @@ func run(ctx context.Context, args []string, stdout, stderr io.Writer) error {
 
 // parse reads the command line; flags may stand before or after the folder.
 func parse(args []string, stderr io.Writer) (settings, error) {
-	s := settings{}
+	s := settings{sliding: sliding{bounds: standardBounds()}}
 	var tables, plans, seeds string
 	f := flag.NewFlagSet("judge", flag.ContinueOnError)
 	f.SetOutput(stderr)
-	f.StringVar(&tables, "tables", "", "tables to run, separated by commas (all)")
+	f.StringVar(&tables, "tables", "", "tables or streams to run, separated by commas (all)")
+	f.BoolVar(&s.streams, "streams", false, "go through the streams instead of the tables")
+	f.IntVar(&s.sliding.window, "window", 3000, "streams: rows in the window")
+	f.IntVar(&s.sliding.hold, "hold", 0, "streams: rows that a row waits for before it is judged")
+	f.Float64Var(&s.sliding.retrain, "retrain", 0.05, "streams: rows between two retrains, as a share of the window")
 	f.StringVar(&plans, "plans", "", "noise plans to run (all)")
 	f.StringVar(&seeds, "seeds", "0,1,2", "seeds of the noise to run")
 	f.IntVar(&s.procs, "procs", 2, "cells run at the same time, one core each")
@@ -117,6 +150,9 @@ func parse(args []string, stderr io.Writer) (settings, error) {
 	}
 	if s.procs < 1 {
 		return s, fmt.Errorf("--procs %d: give 1 or more", s.procs)
+	}
+	if s.streams && s.compare != "" {
+		return s, errors.New("--compare is for tables; leave --streams out")
 	}
 	s.tables, s.plans = list(tables), list(plans)
 	for _, text := range list(seeds) {
