@@ -12,13 +12,12 @@ import (
 
 // encode fits the encoder and the kernels on the used rows and encodes all of them.
 func (in *intake) encode(t *Table, seed uint64) {
-	cols := in.columns(t)
-	in.encoder = encode.Fit(cols, len(in.rows))
+	cols := columns(t)
+	in.encoder = encode.Fit(cols, in.rows)
 	in.allocate()
-	for i := range in.rows {
-		in.encodeRow(cols, i)
-	}
 	d, n := in.data, len(in.rows)
+	in.bind(cols)
+	in.encoder.Block(cols, in.rows, d.X, d.Bins.Rows)
 	d.Kernels = make([]*kernel.Map, len(learn.KernelGammas))
 	for j, gamma := range learn.KernelGammas {
 		d.Kernels[j] = kernel.New(d.X, n, d.Dense, d.Dense-1, learn.Landmarks, gamma, rand.New(rand.NewPCG(seed, 1<<32+uint64(j))))
@@ -37,18 +36,19 @@ func (in *intake) carry(t *Table, last *intake) {
 	d.Old = make([]int32, len(in.rows))
 	in.encoder, d.Kernels, d.Pairs = last.encoder, was.Kernels, was.Pairs
 	in.allocate()
-	cols := in.columns(t)
+	var news []int32
 	for i, k := range d.Keys {
 		old, ok := at[k]
 		if !ok {
 			d.Old[i] = -1
-			in.encodeRow(cols, i)
+			news = append(news, int32(i))
 			continue
 		}
 		d.Old[i] = old
 		copy(d.X[i*d.Dense:(i+1)*d.Dense], was.X[int(old)*d.Dense:])
 		copy(d.Bins.Row(i), was.Bins.Row(int(old)))
 	}
+	in.encodeNew(t, news)
 	in.smooth(func(i int) int32 { return d.Old[i] }, was)
 	in.transpose()
 }
@@ -67,12 +67,25 @@ func (in *intake) continues(last *intake) bool {
 	return true
 }
 
-func (in *intake) columns(t *Table) []encode.Input {
+// columns are those of t as the encoder sees them.
+func columns(t *Table) []encode.Input {
 	cols := make([]encode.Input, len(t.Columns))
 	for k := range t.Columns {
-		cols[k] = gather(&t.Columns[k], in.rows)
+		c := &t.Columns[k]
+		if c.Kind == Category {
+			cols[k] = encode.Input{Codes: c.Codes, Levels: c.Levels}
+		} else {
+			cols[k] = encode.Input{Size: c.Size, Values: c.Values}
+		}
 	}
 	return cols
+}
+
+// bind says which slots the columns' category codes have.
+func (in *intake) bind(cols []encode.Input) {
+	for k := range cols {
+		cols[k].Slots = in.encoder.Parts[k].Bind(nil, cols[k].Levels)
+	}
 }
 
 func (in *intake) allocate() {
@@ -82,9 +95,21 @@ func (in *intake) allocate() {
 	d.Bins = &forest.Bins{N: n, D: in.encoder.Bins, Rows: make([]uint8, n*in.encoder.Bins)}
 }
 
-func (in *intake) encodeRow(cols []encode.Input, i int) {
-	d := in.data
-	in.encoder.Row(cols, i, 1, d.X[i*d.Dense:(i+1)*d.Dense], d.Bins.Row(i))
+// encodeNew encodes the listed used rows.
+func (in *intake) encodeNew(t *Table, news []int32) {
+	d, e := in.data, in.encoder
+	cols := columns(t)
+	in.bind(cols)
+	at := make([]int32, len(news))
+	for j, i := range news {
+		at[j] = in.rows[i]
+	}
+	x, bins := make([]float32, len(news)*e.Dense), make([]uint8, len(news)*e.Bins)
+	e.Block(cols, at, x, bins)
+	for j, i := range news {
+		copy(d.X[int(i)*e.Dense:], x[j*e.Dense:(j+1)*e.Dense])
+		copy(d.Bins.Row(int(i)), bins[j*e.Bins:])
+	}
 }
 
 // smooth computes the kernel features; old(i) is row i's place in was, −1 for a new one. Landmarks are drawn without

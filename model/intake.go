@@ -25,10 +25,9 @@ type intake struct {
 
 // field is what a snapshot remembers of a column.
 type field struct {
-	Name   string
-	Kind   Kind
-	Size   int
-	Levels []string
+	Name string
+	Kind Kind
+	Size int
 }
 
 // newIntake checks t and picks its usable rows. Nothing is encoded yet.
@@ -58,7 +57,7 @@ func newIntake(t *Table) (*intake, error) {
 	}
 	for k := range t.Columns {
 		c := &t.Columns[k]
-		in.fields = append(in.fields, field{Name: c.Name, Kind: c.Kind, Size: c.Size, Levels: slices.Clone(c.Levels)})
+		in.fields = append(in.fields, field{Name: c.Name, Kind: c.Kind, Size: c.Size})
 	}
 	in.data.Keys = make([]uint64, len(in.rows))
 	in.data.Labels = make([]int32, len(in.rows))
@@ -157,20 +156,4 @@ func finite(t *Table, i int) bool {
 		}
 	}
 	return true
-}
-
-// gather copies the used rows of a column.
-func gather(c *Column, rows []int32) encode.Input {
-	if c.Kind == Category {
-		out := encode.Input{Codes: make([]int32, len(rows)), Levels: len(c.Levels)}
-		for i, r := range rows {
-			out.Codes[i] = c.Codes[r]
-		}
-		return out
-	}
-	out := encode.Input{Size: c.Size, Values: make([]float64, 0, len(rows)*c.Size)}
-	for _, r := range rows {
-		out.Values = append(out.Values, c.Values[int(r)*c.Size:int(r+1)*c.Size]...)
-	}
-	return out
 }

@@ -59,26 +59,61 @@ func Key(row int64) uint64 {
 	return z ^ z>>31
 }
 
-// check tells whether every slice of the table has one entry a row and every code is in range.
+// check tells whether every slice of the table has one entry a row, every code stands for a name, and names are distinct.
 func (t *Table) check() error {
 	n := t.Rows()
 	if len(t.Keys) != n || (t.Sources != nil && len(t.Sources) != n) {
 		return fmt.Errorf("%w: %d labels, %d keys, %d sources", ErrTable, n, len(t.Keys), len(t.Sources))
 	}
+	if err := checkCodes("class", t.Labels, t.Classes); err != nil {
+		return err
+	}
+	if err := checkCodes("source", t.Sources, t.SourceNames); err != nil {
+		return err
+	}
+	names := make(map[string]bool, len(t.Columns))
 	for i := range t.Columns {
 		c := &t.Columns[i]
-		switch c.Kind {
-		case Number, Vector:
-			if c.Size < 1 || len(c.Values) != n*c.Size {
-				return fmt.Errorf("%w: column %q has %d values for %d rows of %d", ErrTable, c.Name, len(c.Values), n, c.Size)
-			}
-		case Category:
-			if len(c.Codes) != n {
-				return fmt.Errorf("%w: column %q has %d codes for %d rows", ErrTable, c.Name, len(c.Codes), n)
-			}
-		default:
-			return fmt.Errorf("%w: column %q has %v", ErrTable, c.Name, c.Kind)
+		if err := c.check(n); err != nil {
+			return err
 		}
+		if names[c.Name] {
+			return fmt.Errorf("%w: two columns %q", ErrTable, c.Name)
+		}
+		names[c.Name] = true
+	}
+	return nil
+}
+
+func (c *Column) check(n int) error {
+	switch c.Kind {
+	case Number, Vector:
+		if c.Size < 1 || len(c.Values) != n*c.Size {
+			return fmt.Errorf("%w: column %q has %d values for %d rows of %d", ErrTable, c.Name, len(c.Values), n, c.Size)
+		}
+		return nil
+	case Category:
+		if len(c.Codes) != n {
+			return fmt.Errorf("%w: column %q has %d codes for %d rows", ErrTable, c.Name, len(c.Codes), n)
+		}
+		return checkCodes(fmt.Sprintf("level of column %q", c.Name), c.Codes, c.Levels)
+	}
+	return fmt.Errorf("%w: column %q has %v", ErrTable, c.Name, c.Kind)
+}
+
+// checkCodes tells whether all codes are indexes into names, or negative, and names are distinct.
+func checkCodes(what string, codes []int32, names []string) error {
+	for i, c := range codes {
+		if int(c) >= len(names) {
+			return fmt.Errorf("%w: row %d has %s %d of %d", ErrTable, i, what, c, len(names))
+		}
+	}
+	seen := make(map[string]bool, len(names))
+	for _, s := range names {
+		if seen[s] {
+			return fmt.Errorf("%w: %s %q stands there twice", ErrTable, what, s)
+		}
+		seen[s] = true
 	}
 	return nil
 }

@@ -67,8 +67,11 @@ func logShares(v []float64, trees int) {
 	}
 }
 
-// clip bounds a pair's decision in a class score.
-const clip = 3
+// Clip bounds a pair's decision in a class score.
+const Clip = 3
+
+// PairScale is the factor of a pair's clipped decision in a class score, for so many pairs of classes.
+func PairScale(pairs, classes int) float64 { return 2 / float64(1+2*pairs/classes) }
 
 // Score writes the class scores of l: of each class twice the sum of its clipped pair decisions, over one more than
 // the mean number of a class's pairs: 2/k times the sum where all pairs are there. len(dst) = k.
@@ -84,7 +87,7 @@ func (l *Linear) Score(in *Input, dst []float64) {
 	if d.Leaf > 0 {
 		leaf = d.Leaf / math.Sqrt(float64(len(in.Leaves)))
 	}
-	scale := 2 / float64(1+2*len(l.Pairs)/len(dst))
+	scale := PairScale(len(l.Pairs), len(dst))
 	for k := range l.Pairs {
 		p := &l.Pairs[k]
 		w := p.W[:n]
@@ -100,7 +103,7 @@ func (l *Linear) Score(in *Input, dst []float64) {
 			}
 			v += leaf * sum
 		}
-		v = min(max(v, -clip), clip) * scale
+		v = min(max(v, -Clip), Clip) * scale
 		dst[p.A] += v
 		dst[p.B] -= v
 	}

@@ -1,0 +1,98 @@
+package model
+
+import (
+	"cmp"
+	"errors"
+	"fmt"
+	"slices"
+
+	"labelweir/model/internal/encode"
+	"labelweir/model/internal/noise"
+)
+
+// complete checks that the parts of a decoded snapshot fit together, so that nothing in it can lead a scorer astray, and
+// derives what is not saved.
+func (s *Snapshot) complete() error {
+	f := &s.facts
+	if len(f.Classes) < 2 || !rising(f.Classes) || !rising(f.Sources) {
+		return fmt.Errorf("%d classes and %d sources, or they are not in order", len(f.Classes), len(f.Sources))
+	}
+	names := make(map[string]bool, len(s.fields))
+	for i := range s.fields {
+		c := &s.fields[i]
+		if err := c.check(&s.encoder.Parts[i]); err != nil {
+			return fmt.Errorf("column %q: %w", c.Name, err)
+		}
+		if names[c.Name] {
+			return fmt.Errorf("two columns %q", c.Name)
+		}
+		names[c.Name] = true
+	}
+	s.encoder.Measure()
+	s.machine.Classes, s.machine.Dense, s.machine.Bins = len(f.Classes), s.encoder.Dense, s.encoder.Bins
+	if err := s.machine.Check(); err != nil {
+		return err
+	}
+	return checkLayer(s.layer, len(s.machine.Members), len(f.Sources))
+}
+
+// rising tells whether values are sorted and distinct.
+func rising[T cmp.Ordered](v []T) bool {
+	for i := 1; i < len(v); i++ {
+		if !(v[i-1] < v[i]) {
+			return false
+		}
+	}
+	return true
+}
+
+// check tells whether a column and what encodes it are in order.
+func (c *field) check(p *encode.Part) error {
+	switch {
+	case c.Kind == Category:
+		seen := slices.Clone(p.Levels)
+		slices.Sort(seen)
+		if !rising(seen) {
+			return errors.New("a level stands there twice")
+		}
+		return nil
+	case c.Kind != Number && c.Kind != Vector, c.Size < 1:
+		return fmt.Errorf("%v of %d", c.Kind, c.Size)
+	}
+	for i := range p.Numbers {
+		u := &p.Numbers[i]
+		if !rising(u.Knots) || !rising(u.Edges) || len(u.Edges) > 255 {
+			return fmt.Errorf("number %d: %d knots and %d edges, or they do not rise", i, len(u.Knots), len(u.Edges))
+		}
+	}
+	return nil
+}
+
+func checkLayer(l *noise.Layer, members, sources int) error {
+	if len(l.Models) == 0 {
+		return errors.New("no noise model")
+	}
+	k := l.Classes
+	for i := range l.Models {
+		m := &l.Models[i]
+		p := &m.P
+		if len(p.A) != members || len(p.B) != k || len(p.Flip) != k*k || m.Weight < 0 {
+			return fmt.Errorf("noise model %q: %d weights for %d members", m.Name, len(p.A), members)
+		}
+		for _, s := range p.Slopes {
+			if s.C >= k || s.D >= k || s.C == s.D {
+				return fmt.Errorf("noise model %q: slope between classes %d and %d of %d", m.Name, s.C, s.D, k)
+			}
+		}
+		if p.Rho != nil && len(p.Rho) != sources {
+			return fmt.Errorf("noise model %q: factors of %d sources, %d known", m.Name, len(p.Rho), sources)
+		}
+		if p.Gamma < 0 || p.Gamma > 0 && p.Tau <= 0 {
+			return fmt.Errorf("noise model %q: boundary flips γ %v, τ %v", m.Name, p.Gamma, p.Tau)
+		}
+	}
+	if !slices.IsSortedFunc(l.Steps, func(a, b noise.Step) int { return cmp.Compare(a.At, b.At) }) {
+		return errors.New("noise layer: steps do not rise")
+	}
+	return nil
+}
