@@ -192,8 +192,25 @@ func (f *fitting) cold(ctx context.Context) (*noise.Layer, *noise.Facts, error) 
 	data := f.subset(nil, f.members()...)
 	layer, facts := noise.Fit(data)
 	f.leaveOut(layer, data)
+	f.forget()
 	f.progress("noise", 1, 1)
 	return layer, facts, f.whole(ctx)
+}
+
+// forget frees what the search tried and the plan has no use for.
+func (f *fitting) forget() {
+	var used []learn.Setting
+	scores := map[learn.Setting][]float64{}
+	for _, m := range f.plan {
+		if m.forest < 0 {
+			used = append(used, m.setting)
+			scores[m.setting] = f.scores[m.setting]
+		}
+	}
+	f.scores = scores
+	for _, fold := range f.folds {
+		fold.Forget(used)
+	}
 }
 
 // trials is the number of folds, of so many, on which λ is searched: enough for trialRows held-out rows, at most two in

@@ -75,6 +75,20 @@ func (f *Fold) Solve(d *Data, design int, lambda float64, qs []float64, o chain.
 	return out, tally
 }
 
+// Forget drops what a search left behind of other settings than the listed ones.
+func (f *Fold) Forget(but []Setting) {
+	for r, o := range f.runs {
+		for q := range o.states {
+			if !slices.Contains(but, Setting{r.design, r.lambda, q}) {
+				delete(o.states, q)
+			}
+		}
+		if len(o.states) == 0 {
+			delete(f.runs, r)
+		}
+	}
+}
+
 // keep remembers states by the rows of the data.
 func keep(train []int32, p *chain.Problem, qs []float64, states []chain.State) *done {
 	o := &done{rows: make([]int32, len(p.Rows)), labels: p.Y, states: make(map[float64]*chain.State)}
