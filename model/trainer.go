@@ -50,6 +50,7 @@ type Trainer struct {
 	last  *fitting
 	layer *noise.Layer
 	warm  int    // warm fits since the last cold one
+	rows  int    // rows of the last cold fit
 	stage uint64 // fits so far: each has random streams of its own
 }
 
@@ -57,14 +58,14 @@ type Trainer struct {
 func NewTrainer(o Options) *Trainer { return &Trainer{opt: o} }
 
 // Fit trains on t, which it neither keeps nor changes. The first call searches features, λ and q (cold); later ones
-// start from the last result (warm) while columns and classes stay the same. Errors: ErrTable, ErrTooFew, ErrOneClass,
+// start from the last result (warm) while columns and classes stay the same and the number of rows is alike. Errors: ErrTable, ErrTooFew, ErrOneClass,
 // or the context's.
 func (tr *Trainer) Fit(ctx context.Context, t *Table) (*Result, error) {
 	in, err := newIntake(t)
 	if err != nil {
 		return nil, err
 	}
-	warm := tr.last != nil && tr.warm < maxWarm && in.continues(tr.last.intake)
+	warm := tr.last != nil && tr.warm < maxWarm && tr.alike(len(in.rows)) && in.continues(tr.last.intake)
 	var layer *noise.Layer
 	var facts *noise.Facts
 	var f *fitting
@@ -91,11 +92,15 @@ func (tr *Trainer) Fit(ctx context.Context, t *Table) (*Result, error) {
 	tr.stage++
 	tr.warm++
 	if !warm {
-		tr.warm = 0
+		tr.warm, tr.rows = 0, len(in.rows)
 	}
 	f.data.Old = nil
 	return f.result(t, layer, facts, warm), nil
 }
+
+// alike tells whether settings searched on the rows of the last cold fit may do for n rows: when there are twice as many,
+// or less than half, others may be better.
+func (tr *Trainer) alike(n int) bool { return n < 2*tr.rows && 2*n >= tr.rows }
 
 // result scores the table's rows out of fold and puts the snapshot together.
 func (f *fitting) result(t *Table, layer *noise.Layer, facts *noise.Facts, warm bool) *Result {
