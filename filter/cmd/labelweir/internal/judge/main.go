@@ -126,6 +126,7 @@ func parse(args []string, stderr io.Writer) (settings, error) {
 	f.BoolVar(&s.streams, "streams", false, "go through the streams instead of the tables")
 	f.IntVar(&s.sliding.window, "window", 3000, "streams: rows in the window")
 	f.IntVar(&s.sliding.hold, "hold", 0, "streams: rows that a row waits for before it is judged")
+	f.StringVar(&s.sliding.rows, "rows", "", "streams: folder to write each stream's rows with their scores to")
 	f.Float64Var(&s.sliding.retrain, "retrain", 0.05, "streams: rows between two retrains, as a share of the window")
 	f.StringVar(&plans, "plans", "", "noise plans to run (all)")
 	f.StringVar(&seeds, "seeds", "0,1,2", "seeds of the noise to run")

@@ -4,6 +4,7 @@ import (
 	"context"
 	"fmt"
 	"math"
+	"path/filepath"
 	"slices"
 	"time"
 
@@ -25,6 +26,7 @@ type sliding struct {
 	window, hold int
 	retrain      float64 // share of the window
 	bounds       bounds
+	rows         string // folder for the rows with their scores; empty: none
 }
 
 // standardBounds are those of the baselines.
@@ -82,6 +84,9 @@ func judgeStream(ctx context.Context, s *panel.Stream, how sliding) (f streamFig
 	}
 	if f.err == nil {
 		f.measure(how.bounds, s.Wrong, sink.list, fold)
+		if how.rows != "" {
+			f.err = writeRows(filepath.Join(how.rows, s.Name+".tsv"), s.Wrong, sink.list, fold)
+		}
 	}
 	return f
 }

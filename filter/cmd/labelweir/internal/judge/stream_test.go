@@ -81,6 +81,7 @@ func TestStreamIsGoneThroughAsItArrives(t *testing.T) {
 	if err != nil {
 		t.Fatal(err)
 	}
+	s.sliding.rows = dir
 	s.sliding.bounds = bounds{first: 300, turn: 500, settled: 700}
 	streams, err := runStreams(context.Background(), s, t.Output())
 	if err != nil {
@@ -114,6 +115,10 @@ func TestStreamIsGoneThroughAsItArrives(t *testing.T) {
 		if !strings.Contains(out.String(), want) {
 			t.Errorf("no %q in\n%s", want, out.String())
 		}
+	}
+	rows, err := panel.ReadTSV(filepath.Join(dir, "line.tsv"))
+	if err != nil || len(rows) != 900 || rows[3]["wrong"] != "true" || rows[3]["score"] == "NA" || rows[4]["verdict"] != "pass" {
+		t.Errorf("%d rows written, %v", len(rows), err)
 	}
 	path := filepath.Join(dir, "out.tsv")
 	if err := writeStreams(path, streams); err != nil {
