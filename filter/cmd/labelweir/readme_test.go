@@ -68,8 +68,8 @@ func TestReadmeCommandsWork(t *testing.T) {
 		t.Errorf("the README tells %d times how to run the tests", tests)
 	}
 	for _, name := range []string{"tagged.arrow", "report.json", "passed.arrow", "held.arrow", "last.weir"} {
-		if _, err := os.Stat(filepath.Join(dir, name)); err != nil {
-			t.Errorf("after all commands: %v", err)
+		if info, err := os.Stat(filepath.Join(dir, name)); err != nil || info.Size() == 0 {
+			t.Errorf("after all commands: %s is missing or empty: %v", name, err)
 		}
 	}
 }
