@@ -16,6 +16,7 @@ type flips uint8
 const (
 	none   flips = iota // the identity
 	fixed               // one rate, given
+	paired              // one rate for each of two classes, given
 	single              // one rate
 	sparse              // chosen entries of their own over one background rate
 	free                // every entry of its own
@@ -170,7 +171,7 @@ func (r *row) zShare(p *Params, z, o, src int, g float64) float64 {
 
 func (p *Params) updateFlips(c *counts, s shape, k int) {
 	switch s.flips {
-	case none, fixed:
+	case none, fixed, paired:
 		return
 	case single:
 		off, n := 0.0, 0.0

@@ -47,11 +47,46 @@ func family(d *Data, p *Params, prefix string) []*candidate {
 		out = append(out, one)
 	}
 	best.shape.flips = single
+	if k == 2 {
+		grid := twoRates(d, out, prefix)
+		for _, c := range grid {
+			if !c.refused && c.evidence > best.evidence {
+				best = c
+			}
+		}
+		out = append(out, grid...)
+	}
 	all := run(d, best.p.clone(), prefix+"free", shape{flips: free}, coldSteps)
 	out = append(out, all)
 	if k > 2 {
 		if e := chosenEntries(d, best.p, all.p); len(e) > 0 && len(e) < k*(k-1) {
 			out = append(out, run(d, best.p.clone(), prefix+"sparse", shape{flips: sparse, entries: e}, coldSteps))
+		}
+	}
+	return out
+}
+
+// pairRates are the rates, one for each of two classes, at which models are fitted when there are two classes.
+var pairRates = [...]float64{0.001, 0.05, 0.10, 0.20, 0.30, 0.40}
+
+// twoRates integrates the rates of two classes out. Each model starts from the single-rate model, in singles, nearest
+// to its mean rate.
+func twoRates(d *Data, singles []*candidate, prefix string) []*candidate {
+	var out []*candidate
+	for _, a := range pairRates {
+		for _, b := range pairRates {
+			if a == b {
+				continue
+			}
+			near := singles[0]
+			for _, c := range singles {
+				if math.Abs(c.p.Flip[1]-(a+b)/2) < math.Abs(near.p.Flip[1]-(a+b)/2) {
+					near = c
+				}
+			}
+			p := near.p.clone()
+			copy(p.Flip, []float64{1 - a, a, b, 1 - b})
+			out = append(out, run(d, p, fmt.Sprintf("%stwo rates %.2f %.2f", prefix, a, b), shape{flips: paired}, rateSteps))
 		}
 	}
 	return out
@@ -81,6 +116,8 @@ func (c *candidate) penalty(d *Data) float64 {
 	switch c.shape.flips {
 	case single, fixed:
 		v += 1 + math.Log(float64(len(singleRates))/3)
+	case paired:
+		v += 2 + math.Log(float64(len(pairRates)*(len(pairRates)-1))/6)
 	case free:
 		v += k * (k - 1)
 	case sparse:
@@ -156,7 +193,7 @@ func extend(d *Data, all []*candidate) (out []*candidate) {
 		switch {
 		case c.shape.flips == single:
 			bases = append(bases, c)
-		case c.shape.flips != none && c.shape.flips != fixed && !c.refused && (better == nil || c.evidence > better.evidence):
+		case c.shape.flips > single && !c.refused && (better == nil || c.evidence > better.evidence):
 			better = c
 		}
 	}

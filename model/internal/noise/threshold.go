@@ -11,12 +11,13 @@ const (
 	z80        = 1.2815515655446004
 	draws      = 12
 	drawnSteps = 6
+	caution    = 2    // on the expected good rows: what is held back was picked for its high scores
 	drawnRows  = 6000 // a bootstrap on more rows looks at the first so many
 )
 
 // Threshold is the lowest score that may be held back so that the expected share of good labels among all rows scored
 // as high stays at or below 1 − precision: the largest prefix of the ranking whose upper bound
-// (c + 1.28·√(v + v_b))/k does, c = Σ(1−p), v = Σp(1−p) (Bayesian false discovery rate: Newton et al. 2004; Storey
+// (2·c + 1 + 1.28·√(v + v_b))/k does, c = Σ(1−p), v = Σp(1−p) (Bayesian false discovery rate: Newton et al. 2004; Storey
 // 2003). v_b is the variance of c under refits to rows with random exponential weights (Rubin 1981). The result is
 // above 1 when no row may be held back. scores[i] is the mislabel score of row i.
 func Threshold(d *Data, l *Layer, scores []float64, precision float64, rng *rand.Rand) float64 {
@@ -50,7 +51,7 @@ func Threshold(d *Data, l *Layer, scores []float64, precision float64, rng *rand
 				vb = up / z80 * up / z80
 			}
 		}
-		if (c+z80*math.Sqrt(v+vb))/float64(k+1) <= 1-precision {
+		if (caution*c+1+z80*math.Sqrt(v+vb))/float64(k+1) <= 1-precision {
 			best = p
 		}
 	}
@@ -85,8 +86,11 @@ func bootstrap(d *Data, l *Layer, rng *rand.Rand) []*replica {
 		m := l.pick(rng.Float64())
 		p := m.P.clone()
 		s := m.shape
-		if s.flips == fixed {
+		switch s.flips {
+		case fixed:
 			s.flips = single
+		case paired:
+			s.flips = free
 		}
 		fit(&part, p, s, drawnSteps, w)
 		out[b] = &replica{p: p, r: newRow(d.Classes)}
