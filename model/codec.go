@@ -38,7 +38,8 @@ import (
 //
 //	members, the packed scorers:
 //	1        u8 count of forests, each:
-//	           list of roots: u32 node; list of nodes: i32 child, u16 feature, u8 cut; u32 width, leaves·width f32 values
+//	           list of nodes, tree after tree, each level by level: u16 feature, u8 cut, u8 is a split;
+//	           u32 width, leaves·width f32 values
 //	1        u8 count of kernels, each: f64 gamma, u32 dim, u32 landmarks, landmarks·dim f32
 //	1        u8 count of members, each:
 //	           u8 forest + 1, u32 first column, u8 linear; a linear one goes on with u8 kernel + 1, f64 clip, f64 scale,

@@ -6,7 +6,6 @@ import (
 	"fmt"
 	"slices"
 
-	"labelweir/model/internal/encode"
 	"labelweir/model/internal/noise"
 )
 
@@ -20,15 +19,17 @@ func (s *Snapshot) complete() error {
 	names := make(map[string]bool, len(s.fields))
 	for i := range s.fields {
 		c := &s.fields[i]
-		if err := c.check(&s.encoder.Parts[i]); err != nil {
-			return fmt.Errorf("column %q: %w", c.Name, err)
+		if c.Kind != Category && (c.Kind != Number && c.Kind != Vector || c.Size < 1) {
+			return fmt.Errorf("column %q: %v of %d", c.Name, c.Kind, c.Size)
 		}
 		if names[c.Name] {
 			return fmt.Errorf("two columns %q", c.Name)
 		}
 		names[c.Name] = true
 	}
-	s.encoder.Measure()
+	if err := s.encoder.Check(); err != nil {
+		return err
+	}
 	s.machine.Classes, s.machine.Dense, s.machine.Bins = len(f.Classes), s.encoder.Dense, s.encoder.Bins
 	if err := s.machine.Check(); err != nil {
 		return err
@@ -44,28 +45,6 @@ func rising[T cmp.Ordered](v []T) bool {
 		}
 	}
 	return true
-}
-
-// check tells whether a column and what encodes it are in order.
-func (c *field) check(p *encode.Part) error {
-	switch {
-	case c.Kind == Category:
-		seen := slices.Clone(p.Levels)
-		slices.Sort(seen)
-		if !rising(seen) {
-			return errors.New("a level stands there twice")
-		}
-		return nil
-	case c.Kind != Number && c.Kind != Vector, c.Size < 1:
-		return fmt.Errorf("%v of %d", c.Kind, c.Size)
-	}
-	for i := range p.Numbers {
-		u := &p.Numbers[i]
-		if !rising(u.Knots) || !rising(u.Edges) || len(u.Edges) > 255 {
-			return fmt.Errorf("number %d: %d knots and %d edges, or they do not rise", i, len(u.Knots), len(u.Edges))
-		}
-	}
-	return nil
 }
 
 func checkLayer(l *noise.Layer, members, sources int) error {

@@ -4,7 +4,6 @@ import (
 	"fmt"
 
 	"labelweir/model/internal/encode"
-	"labelweir/model/internal/forest"
 	"labelweir/model/internal/fresh"
 	"labelweir/model/internal/noise"
 )
@@ -114,12 +113,9 @@ func (d *decoder) machine(m *fresh.Machine) {
 
 func (d *decoder) forest() fresh.Forest {
 	f := fresh.Forest{}
-	for range d.count(4) {
-		f.Roots = append(f.Roots, d.i32())
-	}
-	f.Nodes = make([]forest.Node, d.count(7))
+	f.Nodes = make([]fresh.Node, d.count(4))
 	for i := range f.Nodes {
-		f.Nodes[i] = forest.Node{Child: d.i32(), Feature: d.u16(), Cut: d.u8()}
+		f.Nodes[i] = fresh.Node{Feature: d.u16(), Cut: d.u8(), Split: d.flag()}
 	}
 	f.Width = int(d.u32())
 	if leaves := f.Leaves(); leaves > 0 && f.Width <= len(d.b)/leaves {

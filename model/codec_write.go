@@ -113,15 +113,11 @@ func (e *encoder) machine(m *fresh.Machine) {
 }
 
 func (e *encoder) forest(f *fresh.Forest) {
-	e.count(len(f.Roots))
-	for _, r := range f.Roots {
-		e.i32(r)
-	}
 	e.count(len(f.Nodes))
 	for _, n := range f.Nodes {
-		e.i32(n.Child)
 		e.u16(n.Feature)
 		e.u8(n.Cut)
+		e.flag(n.Split)
 	}
 	e.u32(uint32(f.Width))
 	e.f32s(f.Values)

@@ -53,14 +53,16 @@ func (e *Encoder) category(p *Part, in *Input, rows []int32, dense []float32, bi
 
 // number writes one number of each row, and the mark of its absence beside it. values begins at the first row's.
 func (e *Encoder) number(u *Number, values []float64, size int, rows []int32, dense []float32, bins []uint8, scale float32) {
+	l := u.find
 	for r, i := range rows {
 		v := values[int(i)*size]
 		missing := v != v
 		if missing {
 			v = u.Filler
 		}
-		dense[r*e.Dense] = scale * float32(u.normal(v))
-		bins[r*e.Bins] = u.bin(v)
+		bin, normal := l.find(v)
+		dense[r*e.Dense] = scale * float32(normal)
+		bins[r*e.Bins] = uint8(bin)
 		if missing && u.Missing {
 			dense[r*e.Dense+1] = scale
 			bins[r*e.Bins+1] = 1

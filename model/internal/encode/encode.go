@@ -48,15 +48,19 @@ func Fit(cols []Input, rows []int32) *Encoder {
 			p.Numbers[j].fit(c.Values, j, c.Size, rows)
 		}
 	}
-	e.Measure()
+	e.prepare()
 	return e
 }
 
-// Measure sets Dense and Bins from Parts, after loading.
-func (e *Encoder) Measure() {
+// prepare derives from Parts what is not saved.
+func (e *Encoder) prepare() {
 	e.Bins = 0
 	for i := range e.Parts {
-		e.Bins += e.Parts[i].Width()
+		p := &e.Parts[i]
+		e.Bins += p.Width()
+		for j := range p.Numbers {
+			p.Numbers[j].find = newLookup(&p.Numbers[j])
+		}
 	}
 	e.Dense = e.Bins + 1
 }

@@ -13,6 +13,8 @@ type Number struct {
 	Edges   []float64 // bin k holds x ≤ Edges[k]; above the last: bin len(Edges)
 	Missing bool      // some rows lack a value: one more dense column and one more bin column mark them
 	Filler  float64   // median, which stands for a missing value
+
+	find *lookup
 }
 
 // fit fits u to number at of the listed rows, which have size numbers each.
@@ -73,39 +75,4 @@ func (u *Number) fitEdges(sorted []float64) {
 			u.Edges = append(u.Edges, edge)
 		}
 	}
-}
-
-// normal gives the rank-Gauss value of v, linear between knots.
-func (u *Number) normal(v float64) float64 {
-	i := below(u.Knots, v)
-	switch {
-	case len(u.Knots) == 0:
-		return 0
-	case i == len(u.Knots):
-		return u.Normal[i-1]
-	case i == 0 || u.Knots[i] == v:
-		return u.Normal[i]
-	}
-	t := (v - u.Knots[i-1]) / (u.Knots[i] - u.Knots[i-1])
-	if !(t <= 1) {
-		t = 0.5 // knots so far apart that their distance overflows
-	}
-	return u.Normal[i-1] + t*(u.Normal[i]-u.Normal[i-1])
-}
-
-// bin is the number of v's bin.
-func (u *Number) bin(v float64) uint8 { return uint8(below(u.Edges, v)) }
-
-// below counts the values under v in ascending a, in steps that do not depend on a's contents, so that the processor
-// need not guess.
-func below(a []float64, v float64) int {
-	at := 0
-	for n := len(a); n > 0; {
-		half := (n + 1) >> 1
-		if a[at+half-1] < v {
-			at += half
-		}
-		n -= half
-	}
-	return at
 }

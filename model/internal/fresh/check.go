@@ -43,53 +43,18 @@ func (m *Machine) Check() error {
 	return nil
 }
 
-// check walks the table once: a split's children lie behind it and within its tree, each leaf is met once, in no other
-// tree.
+// check derives the form that walks read and looks at what it cannot see.
 func (f *Forest) check(bins int) error {
-	if len(f.Roots) == 0 || f.Roots[0] != 0 || f.Width < 1 {
-		return fmt.Errorf("%d trees, leaves of %d values", len(f.Roots), f.Width)
+	if err := f.prepare(); err != nil {
+		return err
 	}
-	leaves := f.Leaves()
-	if len(f.Values) != leaves*f.Width {
-		return fmt.Errorf("%d leaves of %d values, %d values", leaves, f.Width, len(f.Values))
+	if len(f.trees) == 0 || f.Width < 1 || len(f.Values) != f.Leaves()*f.Width {
+		return fmt.Errorf("%d trees, %d leaves of %d values, %d values", len(f.trees), f.Leaves(), f.Width, len(f.Values))
 	}
-	seen := make([]bool, leaves)
-	for t, root := range f.Roots {
-		end := int32(len(f.Nodes))
-		if t+1 < len(f.Roots) {
-			end = f.Roots[t+1]
+	for i, n := range f.Nodes {
+		if n.Split && int(n.Feature) >= bins {
+			return fmt.Errorf("node %d splits bin %d of %d", i, n.Feature, bins)
 		}
-		if root < 0 || root >= end || int(end) > len(f.Nodes) {
-			return fmt.Errorf("tree %d lies from node %d to %d of %d", t, root, end, len(f.Nodes))
-		}
-		if err := f.checkTree(root, end, bins, seen); err != nil {
-			return fmt.Errorf("tree %d: %w", t, err)
-		}
-	}
-	return nil
-}
-
-// checkTree wants the nodes of a tree in the order in which their parents name them, which leaves no other tree that
-// shares them and no way round.
-func (f *Forest) checkTree(root, end int32, bins int, seen []bool) error {
-	next := root + 1
-	for i := root; i < end; i++ {
-		n := &f.Nodes[i]
-		if n.Child >= 0 {
-			if n.Child != next || n.Child > end-2 || int(n.Feature) >= bins {
-				return fmt.Errorf("node %d splits bin %d of %d into nodes %d and %d", i, n.Feature, bins, n.Child, int64(n.Child)+1)
-			}
-			next += 2
-			continue
-		}
-		leaf := ^n.Child
-		if int(leaf) >= len(seen) || seen[leaf] {
-			return fmt.Errorf("node %d is leaf %d of %d, or not alone so", i, leaf, len(seen))
-		}
-		seen[leaf] = true
-	}
-	if next != end {
-		return fmt.Errorf("nodes to %d, splits lead to %d", end, next)
 	}
 	return nil
 }

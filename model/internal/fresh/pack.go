@@ -37,8 +37,9 @@ type packer struct {
 	m            *Machine
 	forests      []*forest.Forest
 	kernels      []*kernel.Map
-	usedF, usedK []int // packed index → index of forests, kernels
-	width        []int // of each packed forest
+	usedF, usedK []int   // packed index → index of forests, kernels
+	width        []int   // of each packed forest
+	place        [][]int // by packed forest: leaf → place in its values
 }
 
 // member says where a member finds its values, and reserves its columns.
@@ -81,7 +82,8 @@ func index(list *[]int, v int) int {
 
 func (p *packer) packForests() {
 	for i, at := range p.usedF {
-		p.m.Forests = append(p.m.Forests, packForest(p.forests[at], p.width[i]))
+		f, place := packForest(p.forests[at], p.width[i])
+		p.m.Forests, p.place = append(p.m.Forests, f), append(p.place, place)
 	}
 }
 
@@ -96,7 +98,7 @@ func (p *packer) shares(m *Member, f *forest.Forest) {
 	to, k, leaf := &p.m.Forests[m.Forest], p.m.Classes, 0
 	for _, t := range f.Trees {
 		for i := 0; i < len(t.Shares); i += k {
-			copy(to.Values[leaf*to.Width+m.At:], t.Shares[i:i+k])
+			copy(to.Values[p.place[m.Forest][leaf]*to.Width+m.At:], t.Shares[i:i+k])
 			leaf++
 		}
 	}
@@ -118,9 +120,9 @@ func (p *packer) linear(m *Member, l *learn.Linear) {
 		m.Pairs[i].Bias = w[n]
 		if m.Forest >= 0 {
 			f := &p.m.Forests[m.Forest]
-			leaf := d.Leaf / math.Sqrt(float64(len(f.Roots)))
+			leaf := d.Leaf / math.Sqrt(float64(len(f.trees)))
 			for j, v := range w[n+1:] {
-				f.Values[j*f.Width+m.At+i] = float32(leaf * v)
+				f.Values[p.place[m.Forest][j]*f.Width+m.At+i] = float32(leaf * v)
 			}
 		}
 	}

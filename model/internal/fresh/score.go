@@ -9,7 +9,7 @@ func (m *Machine) Rows() int { return min(max(1<<18/(4*m.Dense+m.Bins), 16), 256
 // Scratch is the memory of one block. It belongs to one goroutine.
 type Scratch struct {
 	X       []float32   // rows·Dense, the constant included: to be filled before Score
-	Bins    []uint8     // rows·Bins: to be filled before Score
+	Bins    []uint8     // rows·Bins: to be filled before Score; what lies behind is not read as such
 	Members [][]float64 // by member: rows·classes class scores, filled by Score
 
 	sums   [][]float64 // by forest: rows·Width
@@ -19,7 +19,7 @@ type Scratch struct {
 // NewScratch returns scratch for blocks of m.Rows() rows.
 func (m *Machine) NewScratch() *Scratch {
 	n := m.Rows()
-	s := &Scratch{X: make([]float32, n*m.Dense), Bins: make([]uint8, n*m.Bins)}
+	s := &Scratch{X: make([]float32, n*m.Dense), Bins: make([]uint8, n*m.Bins+reach)}
 	for range m.Members {
 		s.Members = append(s.Members, make([]float64, n*m.Classes))
 	}
@@ -58,7 +58,7 @@ func (m *Machine) Score(s *Scratch, n int) {
 // vote writes the centred logarithms of the mean class shares, floored at half a tree's vote.
 func (m *Machine) vote(p *Member, s *Scratch, r int, dst []float64) {
 	f := &m.Forests[p.Forest]
-	trees := float64(len(f.Roots))
+	trees := float64(len(f.trees))
 	sum := s.sums[p.Forest][r*f.Width+p.At:]
 	mean := 0.0
 	for c := range dst {
