@@ -42,6 +42,7 @@ type change struct {
 	onset     int64   // row at which the change began
 	atOpening float64 // normal when it opened
 	calm      int     // retrains in a row whose slice was normal
+	caughtUp  bool    // the newest snapshot knows only rows from after the onset
 
 	disagree, seen int // in the slice since the last retrain
 }
@@ -90,7 +91,7 @@ func (c *change) arrive(row int64, s *model.Score) bool {
 	if c.g = max(0, c.g+step); c.g < changeLevel {
 		return false
 	}
-	c.open, c.onset, c.atOpening, c.calm = true, c.since, c.normal, 0
+	c.open, c.onset, c.atOpening, c.calm, c.caughtUp = true, c.since, c.normal, 0, false
 	return true
 }
 
@@ -125,4 +126,6 @@ func (c *change) next() { c.disagree, c.seen = 0, 0 }
 func (c *change) share() float64 { return float64(c.disagree) / float64(max(1, c.seen)) }
 
 // doubts tells whether the row came after a change that the snapshots have not caught up with.
-func (c *change) doubts(row int64) bool { return c.open && c.calm == 0 && row >= c.onset }
+func (c *change) doubts(row int64) bool {
+	return c.open && c.calm == 0 && !c.caughtUp && row >= c.onset
+}

@@ -28,6 +28,9 @@ type slide struct {
 	due      int64 // row count at which the next retrain is due; 0: not known yet
 	tried    int64 // row count at the last retrain, possible or not
 	waiting  int64 // most rows that may wait; 0: not known yet
+
+	since   int64 // row from which the newest change began; 0: none
+	cutting bool  // retrains leave out the rows before since
 }
 
 func (e *engine) newSlide(l Learner) (*slide, error) {
@@ -209,7 +212,15 @@ func (s *slide) retrain(ctx context.Context) (bool, error) {
 	}
 	c.next()
 	s.tried = s.read
-	return s.train(ctx, s.learner, s.win.View())
+	v, cut := s.view()
+	if cut && s.first < s.since { // rows from before the change are for the snapshot from before it
+		if err := s.letGo(min(s.since, s.read)); err != nil {
+			return false, err
+		}
+	}
+	ok, err := s.train(ctx, s.learner, v)
+	c.caughtUp = c.caughtUp || ok && cut
+	return ok, err
 }
 
 // pace is the number of rows to the retrain after this one.
