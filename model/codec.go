@@ -39,7 +39,7 @@ import (
 //	members, the packed scorers:
 //	1        u8 count of forests, each:
 //	           list of nodes, tree after tree, each level by level: u16 feature, u8 cut, u8 is a split;
-//	           u32 width, leaves·width f32 values
+//	           list of columns of leaf values: f64 low, f64 step; for each leaf, four columns a u64, u16 q: low + step·q
 //	1        u8 count of kernels, each: f64 gamma, u32 dim, u32 landmarks, landmarks·dim f32
 //	1        u8 count of members, each:
 //	           u8 forest + 1, u32 first column, u8 linear; a linear one goes on with u8 kernel + 1, f64 clip, f64 scale,

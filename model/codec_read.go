@@ -117,11 +117,17 @@ func (d *decoder) forest() fresh.Forest {
 	for i := range f.Nodes {
 		f.Nodes[i] = fresh.Node{Feature: d.u16(), Cut: d.u8(), Split: d.flag()}
 	}
-	f.Width = int(d.u32())
-	if leaves := f.Leaves(); leaves > 0 && f.Width <= len(d.b)/leaves {
-		f.Values = d.f32s(leaves * f.Width)
+	for range d.count(2 * 8) {
+		f.Low, f.Step = append(f.Low, d.finite()), append(f.Step, d.finite())
+	}
+	words := (len(f.Low) + 3) / 4
+	if leaves := f.Leaves(); leaves > 0 && words <= len(d.b)/leaves {
+		f.Values = make([]uint64, d.fits(leaves*words, 8))
+		for i := range f.Values {
+			f.Values[i] = d.u64()
+		}
 	} else {
-		d.fail(fmt.Errorf("%d leaves of %d values", leaves, f.Width))
+		d.fail(fmt.Errorf("%d leaves of %d values", leaves, len(f.Low)))
 	}
 	return f
 }

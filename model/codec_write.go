@@ -119,8 +119,14 @@ func (e *encoder) forest(f *fresh.Forest) {
 		e.u8(n.Cut)
 		e.flag(n.Split)
 	}
-	e.u32(uint32(f.Width))
-	e.f32s(f.Values)
+	e.count(len(f.Low))
+	for c, v := range f.Low {
+		e.f64(v)
+		e.f64(f.Step[c])
+	}
+	for _, v := range f.Values {
+		e.u64(v)
+	}
 }
 
 func (e *encoder) member(m *fresh.Member) {

@@ -36,8 +36,8 @@ func (m *Machine) Check() error {
 		}
 	}
 	for i, n := range taken {
-		if n != m.Forests[i].Width {
-			return fmt.Errorf("forest %d: leaves of %d values, %d of them used", i, m.Forests[i].Width, n)
+		if w := len(m.Forests[i].Low); n != w {
+			return fmt.Errorf("forest %d: leaves of %d values, %d of them used", i, w, n)
 		}
 	}
 	return nil
@@ -48,8 +48,8 @@ func (f *Forest) check(bins int) error {
 	if err := f.prepare(); err != nil {
 		return err
 	}
-	if len(f.trees) == 0 || f.Width < 1 || len(f.Values) != f.Leaves()*f.Width {
-		return fmt.Errorf("%d trees, %d leaves of %d values, %d values", len(f.trees), f.Leaves(), f.Width, len(f.Values))
+	if err := f.checkValues(); err != nil {
+		return err
 	}
 	for i, n := range f.Nodes {
 		if n.Split && int(n.Feature) >= bins {

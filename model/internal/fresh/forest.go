@@ -8,11 +8,11 @@ import (
 
 // Forest is a list of trees whose nodes stand in one table, and one row of values for each leaf.
 type Forest struct {
-	Nodes  []Node    // tree after tree, each level by level from its root: children stand in the order of their parents
-	Width  int       // values a leaf has
-	Values []float32 // leaves·Width, in the order of the leaves in Nodes
+	Nodes     []Node    // tree after tree, each level by level from its root: children stand in the order of their parents
+	Low, Step []float64 // by column of the leaf values
+	Values    []uint64  // in the order of the leaves in Nodes, ⌈columns/4⌉ words each
 
-	words []uint64 // Nodes in the form that walks read
+	steps []uint64 // Nodes in the form that walks read
 	trees []tree
 }
 
@@ -34,9 +34,11 @@ const (
 	maxLeaves = 1 << 23 // of a tree
 )
 
-// packForest lays the trees of f out; Values are left zero. It returns for each leaf of f its place in Values.
-func packForest(f *forest.Forest, width int) (p Forest, place []int) {
-	p = Forest{Width: width, Values: make([]float32, f.Leaves()*width)}
+// packForest lays the trees of f out, with room for so many columns of leaf values. It returns which leaf of f stands at
+// each place.
+func packForest(f *forest.Forest, columns int) (p Forest, place []int) {
+	p = Forest{Low: make([]float64, columns), Step: make([]float64, columns)}
+	p.Values = make([]uint64, f.Leaves()*p.words())
 	place = make([]int, f.Leaves())
 	next := 0
 	for t, from := range f.Trees {
@@ -45,7 +47,7 @@ func packForest(f *forest.Forest, width int) (p Forest, place []int) {
 			n := from.Nodes[order[i]]
 			if n.Child < 0 {
 				p.Nodes = append(p.Nodes, Node{})
-				place[f.First[t]+^n.Child] = next
+				place[next] = int(f.First[t] + ^n.Child)
 				next++
 				continue
 			}
@@ -70,9 +72,9 @@ func (f *Forest) Leaves() int {
 	return n
 }
 
-// prepare derives words and trees and tells whether Nodes are whole trees.
+// prepare derives steps and trees and tells whether Nodes are whole trees.
 func (f *Forest) prepare() error {
-	f.words, f.trees = make([]uint64, len(f.Nodes)), nil
+	f.steps, f.trees = make([]uint64, len(f.Nodes)), nil
 	leaves := int32(0)
 	for i := 0; i < len(f.Nodes); {
 		t := tree{root: int32(i), leaf: leaves}
@@ -84,12 +86,12 @@ func (f *Forest) prepare() error {
 			}
 			n := f.Nodes[i]
 			if n.Split {
-				f.words[i] = uint64(next)<<32 | uint64(n.Cut)<<16 | uint64(n.Feature)
+				f.steps[i] = uint64(next)<<32 | uint64(n.Cut)<<16 | uint64(n.Feature)
 				next += 2
 				continue
 			}
 			id := uint64(leaves - t.leaf)
-			f.words[i] = uint64(i)<<32 | leafBit | id>>16<<24 | 0xff<<16 | id&0xffff
+			f.steps[i] = uint64(i)<<32 | leafBit | id>>16<<24 | 0xff<<16 | id&0xffff
 			leaves++
 		}
 		if leaves-t.leaf > maxLeaves {
@@ -102,22 +104,64 @@ func (f *Forest) prepare() error {
 // reach is how far a feature number can reach: the array behind a walked row is that long, so that no index leaves it.
 const reach = 1 << 16
 
-// sum writes into acc (rows·Width) the sum over the trees of the values of each row's leaves. bins holds rows of d bytes
-// and goes on for reach bytes after the last.
-func (f *Forest) sum(bins []uint8, d, rows int, acc []float64) {
-	acc = acc[:rows*f.Width]
-	clear(acc)
+// sum writes into dst (rows·columns) the sum over the trees of the values of each row's leaves. bins holds rows of d bytes
+// and goes on for reach bytes after the last; acc is scratch of two words for each word of a leaf's values, times rows.
+func (f *Forest) sum(bins []uint8, d, rows int, acc []uint64, dst []float64) {
+	w := 2 * f.words()
+	clear(acc[:rows*w])
+	if w == 2 {
+		f.sumWords(bins, d, rows, acc)
+	} else {
+		f.sumRows(bins, d, rows, acc)
+	}
+	n := len(f.Low)
+	for r := range rows {
+		f.total(acc[r*w:], dst[r*n:(r+1)*n])
+	}
+}
+
+// sumWords is sum's loop for leaves of one word.
+func (f *Forest) sumWords(bins []uint8, d, rows int, acc []uint64) {
+	for _, t := range f.trees {
+		values := f.Values[t.leaf:]
+		r := 0
+		for ; r+4 <= rows; r += 4 {
+			a, b, c, e := f.walk4(t.root, bins[r*d:], d)
+			at := (*[8]uint64)(acc[2*r:])
+			v := values[leafOf(a)]
+			at[0] += v & pairs
+			at[1] += v >> 16 & pairs
+			v = values[leafOf(b)]
+			at[2] += v & pairs
+			at[3] += v >> 16 & pairs
+			v = values[leafOf(c)]
+			at[4] += v & pairs
+			at[5] += v >> 16 & pairs
+			v = values[leafOf(e)]
+			at[6] += v & pairs
+			at[7] += v >> 16 & pairs
+		}
+		for ; r < rows; r++ {
+			f.add(t.leaf+leafOf(f.walk(t.root, bins[r*d:])), acc[2*r:])
+		}
+	}
+}
+
+// sumRows is sum's loop for leaves of any number of words.
+func (f *Forest) sumRows(bins []uint8, d, rows int, acc []uint64) {
+	w := 2 * f.words()
 	for _, t := range f.trees {
 		r := 0
 		for ; r+4 <= rows; r += 4 {
 			a, b, c, e := f.walk4(t.root, bins[r*d:], d)
-			f.add(t.leaf+leafOf(a), acc[r*f.Width:])
-			f.add(t.leaf+leafOf(b), acc[(r+1)*f.Width:])
-			f.add(t.leaf+leafOf(c), acc[(r+2)*f.Width:])
-			f.add(t.leaf+leafOf(e), acc[(r+3)*f.Width:])
+			at := acc[r*w:]
+			f.add(t.leaf+leafOf(a), at)
+			f.add(t.leaf+leafOf(b), at[w:])
+			f.add(t.leaf+leafOf(c), at[2*w:])
+			f.add(t.leaf+leafOf(e), at[3*w:])
 		}
 		for ; r < rows; r++ {
-			f.add(t.leaf+leafOf(f.walk(t.root, bins[r*d:])), acc[r*f.Width:])
+			f.add(t.leaf+leafOf(f.walk(t.root, bins[r*d:])), acc[r*w:])
 		}
 	}
 }
@@ -125,42 +169,28 @@ func (f *Forest) sum(bins []uint8, d, rows int, acc []float64) {
 // leafOf is the number, in its tree, of the leaf in word w.
 func leafOf(w uint64) int32 { return int32(w>>24&0x7f<<16 | w&0xffff) }
 
-// add adds the values of a leaf.
-func (f *Forest) add(leaf int32, acc []float64) {
-	v := f.Values[int(leaf)*f.Width : int(leaf+1)*f.Width]
-	acc = acc[:len(v)]
-	for len(v) >= 2 && len(acc) >= 2 {
-		acc[0] += float64(v[0])
-		acc[1] += float64(v[1])
-		v, acc = v[2:], acc[2:]
-	}
-	if len(v) > 0 && len(acc) > 0 {
-		acc[0] += float64(v[0])
-	}
-}
-
 // walk is the word of one row's leaf.
 func (f *Forest) walk(root int32, bins []uint8) uint64 {
 	row := (*[reach]uint8)(bins)
-	w := f.words[root]
+	w := f.steps[root]
 	for w&leafBit == 0 {
-		w = f.words[child(w, row)]
+		w = f.steps[child(w, row)]
 	}
 	return w
 }
 
 // walk4 is the words of the leaves of four rows, walked side by side and without branches, so that their loads overlap.
 func (f *Forest) walk4(root int32, bins []uint8, d int) (a, b, c, e uint64) {
-	words := f.words
+	steps := f.steps
 	p, q := (*[reach]uint8)(bins), (*[reach]uint8)(bins[d:])
 	r, s := (*[reach]uint8)(bins[2*d:]), (*[reach]uint8)(bins[3*d:])
-	a = words[root]
+	a = steps[root]
 	b, c, e = a, a, a
 	for a&b&c&e&leafBit == 0 {
-		a = words[child(a, p)]
-		b = words[child(b, q)]
-		c = words[child(c, r)]
-		e = words[child(e, s)]
+		a = steps[child(a, p)]
+		b = steps[child(b, q)]
+		c = steps[child(c, r)]
+		e = steps[child(e, s)]
 	}
 	return a, b, c, e
 }

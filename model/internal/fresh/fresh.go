@@ -18,7 +18,7 @@ type Machine struct {
 // Member is one scorer: the vote of a forest or a linear scorer over pairs of classes.
 type Member struct {
 	Forest int // index into Machine.Forests, −1: no leaves. A vote has its class shares there, a linear scorer a weight a pair
-	At     int // first of its columns in Forest.Values
+	At     int // first of its columns of leaf values
 	Kernel int // index into Machine.Kernels, −1: none
 	Linear bool
 
@@ -36,7 +36,7 @@ type Pair struct {
 	Bias float64
 }
 
-// columns is the number of columns of Forest.Values that m reads.
+// columns is the number of columns of leaf values that m reads.
 func (m *Member) columns(classes int) int {
 	if m.Linear {
 		return len(m.Pairs)

@@ -39,7 +39,7 @@ type packer struct {
 	kernels      []*kernel.Map
 	usedF, usedK []int   // packed index → index of forests, kernels
 	width        []int   // of each packed forest
-	place        [][]int // by packed forest: leaf → place in its values
+	place        [][]int // by packed forest: place in its values → leaf
 }
 
 // member says where a member finds its values, and reserves its columns.
@@ -95,12 +95,13 @@ func (p *packer) packKernels() {
 
 // shares copies the class shares of the leaves.
 func (p *packer) shares(m *Member, f *forest.Forest) {
-	to, k, leaf := &p.m.Forests[m.Forest], p.m.Classes, 0
+	var all []float32
 	for _, t := range f.Trees {
-		for i := 0; i < len(t.Shares); i += k {
-			copy(to.Values[p.place[m.Forest][leaf]*to.Width+m.At:], t.Shares[i:i+k])
-			leaf++
-		}
+		all = append(all, t.Shares...)
+	}
+	place, k := p.place[m.Forest], p.m.Classes
+	for c := range k {
+		p.m.Forests[m.Forest].set(m.At+c, func(l int) float64 { return float64(all[place[l]*k+c]) })
 	}
 }
 
@@ -119,11 +120,9 @@ func (p *packer) linear(m *Member, l *learn.Linear) {
 		}
 		m.Pairs[i].Bias = w[n]
 		if m.Forest >= 0 {
-			f := &p.m.Forests[m.Forest]
+			f, place := &p.m.Forests[m.Forest], p.place[m.Forest]
 			leaf := d.Leaf / math.Sqrt(float64(len(f.trees)))
-			for j, v := range w[n+1:] {
-				f.Values[p.place[m.Forest][j]*f.Width+m.At+i] = float32(leaf * v)
-			}
+			f.set(m.At+i, func(l int) float64 { return leaf * w[n+1+place[l]] })
 		}
 	}
 }

@@ -4,7 +4,7 @@ import "math"
 
 // Rows is the most rows of a block for rows of this many numbers and bins: enough that a tree, once in the cache, is
 // used many times, few enough that the block stays there too.
-func (m *Machine) Rows() int { return min(max(1<<18/(4*m.Dense+m.Bins), 16), 256) }
+func (m *Machine) Rows() int { return min(max(1<<20/(4*m.Dense+m.Bins), 16), 512) }
 
 // Scratch is the memory of one block. It belongs to one goroutine.
 type Scratch struct {
@@ -12,7 +12,8 @@ type Scratch struct {
 	Bins    []uint8     // rows·Bins: to be filled before Score; what lies behind is not read as such
 	Members [][]float64 // by member: rows·classes class scores, filled by Score
 
-	sums   [][]float64 // by forest: rows·Width
+	acc    [][]uint64  // by forest: see Forest.sum
+	sums   [][]float64 // by forest: rows·columns
 	smooth [][]float32 // by kernel: the values of one row
 }
 
@@ -24,7 +25,8 @@ func (m *Machine) NewScratch() *Scratch {
 		s.Members = append(s.Members, make([]float64, n*m.Classes))
 	}
 	for i := range m.Forests {
-		s.sums = append(s.sums, make([]float64, n*m.Forests[i].Width))
+		s.acc = append(s.acc, make([]uint64, n*2*m.Forests[i].words()))
+		s.sums = append(s.sums, make([]float64, n*len(m.Forests[i].Low)))
 	}
 	for i := range m.Kernels {
 		s.smooth = append(s.smooth, make([]float32, m.Kernels[i].Size()))
@@ -36,7 +38,7 @@ func (m *Machine) NewScratch() *Scratch {
 // beside it.
 func (m *Machine) Score(s *Scratch, n int) {
 	for i := range m.Forests {
-		m.Forests[i].sum(s.Bins, m.Bins, n, s.sums[i])
+		m.Forests[i].sum(s.Bins, m.Bins, n, s.acc[i], s.sums[i])
 	}
 	for r := range n {
 		x := s.X[r*m.Dense : (r+1)*m.Dense-1]
@@ -59,7 +61,7 @@ func (m *Machine) Score(s *Scratch, n int) {
 func (m *Machine) vote(p *Member, s *Scratch, r int, dst []float64) {
 	f := &m.Forests[p.Forest]
 	trees := float64(len(f.trees))
-	sum := s.sums[p.Forest][r*f.Width+p.At:]
+	sum := s.sums[p.Forest][r*len(f.Low)+p.At:]
 	mean := 0.0
 	for c := range dst {
 		dst[c] = math.Log(max(sum[c]/trees, 0.5/trees))
@@ -76,7 +78,7 @@ func (m *Machine) linear(p *Member, s *Scratch, r int, x []float32, dst []float6
 	clear(dst)
 	var leaves []float64
 	if p.Forest >= 0 {
-		w := m.Forests[p.Forest].Width
+		w := len(m.Forests[p.Forest].Low)
 		leaves = s.sums[p.Forest][r*w+p.At : (r+1)*w]
 	}
 	in, w := x, p.Weight
