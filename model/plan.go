@@ -28,6 +28,10 @@ func (m member) String() string {
 // fewest is the spread in logits below which a member is left out.
 const fewest = 0.02
 
+// preferLambda is the evidence in nats that each step to a larger λ is given beforehand: of settings that do alike on the
+// rows at hand, the more restrained one does better on others.
+const preferLambda = 1.5
+
 // choose picks for each design the setting with the highest evidence out of fold. scores holds, by setting, the class
 // scores of all rows; only rows that trial marks count.
 func (in *intake) choose(scores map[learn.Setting][]float64, trial []int32) []learn.Setting {
@@ -35,14 +39,15 @@ func (in *intake) choose(scores map[learn.Setting][]float64, trial []int32) []le
 	for i := range learn.Designs {
 		best, at := math.Inf(-1), -1
 		var all []learn.Setting
-		for _, lambda := range learn.Designs[i].Lambdas {
+		for step, lambda := range learn.Designs[i].Lambdas {
 			for _, q := range learn.Qs {
 				s := learn.Setting{Design: i, Lambda: lambda, Q: q}
 				if scores[s] == nil {
 					continue
 				}
 				all = append(all, s)
-				if _, e := noise.Quick(in.subset(trial, scores[s])); e > best {
+				_, e := noise.Quick(in.subset(trial, scores[s]))
+				if e += float64(step) * preferLambda; e > best {
 					best, at = e, len(all)-1
 				}
 			}
