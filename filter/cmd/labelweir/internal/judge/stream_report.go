@@ -48,7 +48,7 @@ func streamFields() []struct {
 // compareWith is how many of streamFields, from the first, are set beside the baselines.
 const compareWith = 7
 
-// mark says where a figure stands to the best baseline's; empty when one is missing.
+// streamMark says where a figure stands to the best baseline's; empty when one is missing.
 func streamMark(name string, value, best float64) string {
 	switch d := panel.Better(name, value, best); {
 	case math.IsNaN(d):

@@ -87,13 +87,14 @@ func ReadStreamBaselines(dir string) ([]StreamBaseline, error) {
 }
 
 // BestFigure gives the best figure of any method on the stream, and which method has it; NaN when none has. Lower is
-// better for ece, higher for all others.
+// better for ece, higher for all others. For share95, the share of rows with a score of .95 or more, only methods count
+// that are right about as many of them.
 func BestFigure(base []StreamBaseline, stream, name string) (float64, string) {
 	best, method := math.NaN(), ""
 	for i := range base {
 		b := &base[i]
 		v := b.Figure(name)
-		if b.Stream != stream || math.IsNaN(v) {
+		if b.Stream != stream || math.IsNaN(v) || name == "share95" && !(b.Figure("prec95") >= 0.95) {
 			continue
 		}
 		if math.IsNaN(best) || Better(name, v, best) > 0 {
