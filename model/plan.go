@@ -30,7 +30,7 @@ const fewest = 0.02
 
 // preferLambda is the evidence in nats that each step to a larger λ is given beforehand: of settings that do alike on the
 // rows at hand, the more restrained one does better on others.
-const preferLambda = 1.5
+const preferLambda = 3
 
 // choose picks for each design the setting with the highest evidence out of fold. scores holds, by setting, the class
 // scores of all rows; only rows that trial marks count.
