@@ -49,7 +49,6 @@ func (e *encoder) u8(v uint8)    { e.room(); e.buf = append(e.buf, v) }
 func (e *encoder) u16(v uint16)  { e.room(); e.buf = binary.LittleEndian.AppendUint16(e.buf, v) }
 func (e *encoder) u32(v uint32)  { e.room(); e.buf = binary.LittleEndian.AppendUint32(e.buf, v) }
 func (e *encoder) u64(v uint64)  { e.room(); e.buf = binary.LittleEndian.AppendUint64(e.buf, v) }
-func (e *encoder) i32(v int32)   { e.u32(uint32(v)) }
 func (e *encoder) f32(v float32) { e.u32(math.Float32bits(v)) }
 func (e *encoder) f64(v float64) { e.u64(math.Float64bits(v)) }
 func (e *encoder) count(n int)   { e.u32(uint32(n)) }
@@ -134,7 +133,6 @@ func (d *decoder) u8() uint8    { return d.take(1)[0] }
 func (d *decoder) u16() uint16  { return binary.LittleEndian.Uint16(d.take(2)) }
 func (d *decoder) u32() uint32  { return binary.LittleEndian.Uint32(d.take(4)) }
 func (d *decoder) u64() uint64  { return binary.LittleEndian.Uint64(d.take(8)) }
-func (d *decoder) i32() int32   { return int32(d.u32()) }
 func (d *decoder) f64() float64 { return math.Float64frombits(d.u64()) }
 
 // flag reads a byte that is 0 or 1.

@@ -19,7 +19,7 @@ func (s *Snapshot) complete() error {
 	names := make(map[string]bool, len(s.fields))
 	for i := range s.fields {
 		c := &s.fields[i]
-		if c.Kind != Category && (c.Kind != Number && c.Kind != Vector || c.Size < 1) {
+		if (c.Kind == Category) != (c.Size == 0) || c.Kind < Number || c.Kind > Vector {
 			return fmt.Errorf("column %q: %v of %d", c.Name, c.Kind, c.Size)
 		}
 		if names[c.Name] {

@@ -55,16 +55,7 @@ func (in *intake) carry(t *Table, last *intake) {
 
 // continues tells whether a training on in can start from one on last.
 func (in *intake) continues(last *intake) bool {
-	if !slices.Equal(in.classes, last.classes) || len(in.fields) != len(last.fields) {
-		return false
-	}
-	for i := range in.fields {
-		a, b := &in.fields[i], &last.fields[i]
-		if a.Name != b.Name || a.Kind != b.Kind || a.Size != b.Size {
-			return false
-		}
-	}
-	return true
+	return slices.Equal(in.classes, last.classes) && slices.Equal(in.fields, last.fields)
 }
 
 // columns are those of t as the encoder sees them.

@@ -27,7 +27,15 @@ type intake struct {
 type field struct {
 	Name string
 	Kind Kind
-	Size int
+	Size int // 0 for a category
+}
+
+func (c *Column) field() field {
+	f := field{Name: c.Name, Kind: c.Kind, Size: c.Size}
+	if c.Kind == Category {
+		f.Size = 0
+	}
+	return f
 }
 
 // newIntake checks t and picks its usable rows. Nothing is encoded yet.
@@ -57,7 +65,7 @@ func newIntake(t *Table) (*intake, error) {
 	}
 	for k := range t.Columns {
 		c := &t.Columns[k]
-		in.fields = append(in.fields, field{Name: c.Name, Kind: c.Kind, Size: c.Size})
+		in.fields = append(in.fields, c.field())
 	}
 	in.data.Keys = make([]uint64, len(in.rows))
 	in.data.Labels = make([]int32, len(in.rows))

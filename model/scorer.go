@@ -95,8 +95,8 @@ func (sc *Scorer) bind(t *Table) error {
 			sc.column[k] = at
 		}
 		c := &t.Columns[at]
-		if c.Kind != f.Kind || c.Size != f.Size {
-			return fmt.Errorf("%w: column %q is %v of %d, was %v of %d", ErrSchema, f.Name, c.Kind, c.Size, f.Kind, f.Size)
+		if is := c.field(); is != *f {
+			return fmt.Errorf("%w: column %q is %v of %d, was %v of %d", ErrSchema, f.Name, is.Kind, is.Size, f.Kind, f.Size)
 		}
 		in := &sc.cols[k]
 		in.Values, in.Codes = c.Values, c.Codes
