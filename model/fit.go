@@ -243,15 +243,22 @@ func (f *fitting) leaveOut(l *noise.Layer, d *noise.Data) {
 	f.plan = plan
 }
 
+// roughRows is up to how many rows the objective is rough enough for the escapes from its local minima to find better
+// ones; on 8,000 rows they gained less than 0.01 % of J.
+const roughRows = 4000
+
 // whole fits the plan on all rows, for fresh ones.
 func (f *fitting) whole(ctx context.Context) error {
 	return f.each(ctx, "whole", 3, f.folds[len(f.folds)-1:], func(fold *learn.Fold, rng *rand.Rand, s *chain.Scratch) {
 		for _, m := range f.plan {
 			if m.forest < 0 {
-				o := chain.PortfolioOptions{Hops: 2, Hysteresis: 1e-3}
-				if learn.Designs[m.setting.Design].Leaf == 0 {
-					// Annealing visits every weight bit, and leaves have too many.
-					o.Anneals, o.Anneal = 1, chain.DefaultAnneal()
+				var o chain.PortfolioOptions
+				if f.data.Rows() <= roughRows {
+					o.Hops, o.Hysteresis = 2, 1e-3
+					if learn.Designs[m.setting.Design].Leaf == 0 {
+						// Annealing visits every weight bit, and leaves have too many.
+						o.Anneals, o.Anneal = 1, chain.DefaultAnneal()
+					}
 				}
 				f.solve(fold, m.setting.Design, m.setting.Lambda, []float64{m.setting.Q}, o, rng, s)
 			}
@@ -269,7 +276,7 @@ func (f *fitting) warm(ctx context.Context, stage uint64, last *noise.Layer) (*n
 		for _, m := range f.plan {
 			if m.forest < 0 {
 				o := o
-				if fold.Number == wholeFold {
+				if fold.Number == wholeFold && f.data.Rows() <= roughRows {
 					o.Hops = 2
 				}
 				f.solve(fold, m.setting.Design, m.setting.Lambda, []float64{m.setting.Q}, o, rng, s)

@@ -83,18 +83,14 @@ func (f *Fold) walk(which int, d *Data, first, count int) {
 	for i := range count {
 		fresh[(first+i)%t] = true
 	}
-	for i := range n {
-		row, bins := out[i*t:(i+1)*t], d.Bins.Row(i)
-		if ids == nil || d.Old == nil || d.Old[i] < 0 {
-			fo.Walk(bins, row)
-			continue
-		}
-		old := ids[int(d.Old[i])*t : int(d.Old[i]+1)*t]
-		for j := range row {
-			if fresh[j] {
-				row[j] = fo.First[j] + fo.Trees[j].Leaf(bins)
+	// Tree by tree, so that a tree's nodes stay in the cache.
+	for j, tree := range fo.Trees {
+		first := fo.First[j]
+		for i := range n {
+			if fresh[j] || ids == nil || d.Old == nil || d.Old[i] < 0 {
+				out[i*t+j] = first + tree.Leaf(d.Bins.Row(i))
 			} else {
-				row[j] = old[j] - was.First[j] + fo.First[j]
+				out[i*t+j] = ids[int(d.Old[i])*t+j] - was.First[j] + first
 			}
 		}
 	}

@@ -46,7 +46,8 @@ func family(d *Data, p *Params, prefix string) []*candidate {
 		}
 		out = append(out, one)
 	}
-	best.shape.flips = single
+	best = run(d, best.p.clone(), prefix+"single", shape{flips: single}, coldSteps)
+	out = append(out, best)
 	if k == 2 {
 		grid := twoRates(d, out, prefix)
 		for _, c := range grid {
@@ -114,7 +115,9 @@ func (c *candidate) penalty(d *Data) float64 {
 	k := float64(d.Classes)
 	v := float64(len(c.p.Slopes))
 	switch c.shape.flips {
-	case single, fixed:
+	case single:
+		v++
+	case fixed:
 		v += 1 + math.Log(float64(len(singleRates))/3)
 	case paired:
 		v += 2 + math.Log(float64(len(pairRates)*(len(pairRates)-1))/6)

@@ -31,6 +31,17 @@ const (
 
 // Fit fits a layer and returns it with the candidates' facts.
 func Fit(d *Data) (*Layer, *Facts) {
+	if few := d.thin(searchRows); few != d {
+		return Refit(d, average(d.Classes, search(few)))
+	}
+	all := search(d)
+	l := average(d.Classes, all)
+	l.fitSteps(d)
+	return l, newFacts(d, l, all)
+}
+
+// search fits every model there is.
+func search(d *Data) []*candidate {
 	all := family(d, start(d), "")
 	one := all[1]
 	for _, c := range all {
@@ -44,10 +55,7 @@ func Fit(d *Data) (*Layer, *Facts) {
 		more = append(more, second...)
 		more = append(more, extend(d, second)...)
 	}
-	all = append(all, more...)
-	l := average(d.Classes, all)
-	l.fitSteps(d)
-	return l, newFacts(d, l, all)
+	return append(all, more...)
 }
 
 // average weighs the candidates by their evidence.

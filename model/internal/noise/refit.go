@@ -12,19 +12,23 @@ func Refit(d *Data, last *Layer) (*Layer, *Facts) {
 	if last == nil {
 		return Fit(d)
 	}
-	var all []*candidate
+	all := []*candidate{run(d, last.noiseless(d.Classes), "none", shape{flips: none}, warmSteps)}
 	for i := range last.Models {
 		m := &last.Models[i]
-		if m.Weight > 1e-3 || i < 2 {
+		if m.shape.flips != none && (m.Weight > 1e-3 || i < 2) {
 			all = append(all, run(d, m.P.clone(), m.Name, m.shape, warmSteps))
 		}
 	}
 	l := average(d.Classes, all)
-	if len(l.Models) == 0 {
-		return Fit(d)
-	}
 	l.fitSteps(d)
 	return l, newFacts(d, l, all)
+}
+
+// noiseless is the leading model without flips of any kind.
+func (l *Layer) noiseless(k int) *Params {
+	p := l.Models[0].P.clone()
+	p.Flip, p.Gamma, p.Rho = uniform(k, 0), 0, nil
+	return p
 }
 
 // Weight is the mean weight of member m over the models.
