@@ -276,7 +276,7 @@ func (f *fitting) warm(ctx context.Context, stage uint64, last *noise.Layer) (*n
 		for _, m := range f.plan {
 			if m.forest < 0 {
 				o := o
-				if fold.Number == wholeFold && f.data.Rows() <= roughRows {
+				if fold.Number == wholeFold && f.data.Rows() <= smallRows {
 					o.Hops = 2
 				}
 				f.solve(fold, m.setting.Design, m.setting.Lambda, []float64{m.setting.Q}, o, rng, s)

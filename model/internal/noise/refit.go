@@ -15,7 +15,7 @@ func Refit(d *Data, last *Layer) (*Layer, *Facts) {
 	all := []*candidate{run(d, last.noiseless(d.Classes), "none", shape{flips: none}, warmSteps)}
 	for i := range last.Models {
 		m := &last.Models[i]
-		if m.shape.flips != none && (m.Weight > 1e-3 || i < 2) {
+		if m.shape.flips != none && (m.Weight > 0.02 || i < 2) {
 			all = append(all, run(d, m.P.clone(), m.Name, m.shape, warmSteps))
 		}
 	}

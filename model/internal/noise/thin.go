@@ -6,10 +6,11 @@ const (
 	searchRows = 6000
 )
 
-// thin is every s-th row of d, for the smallest s that leaves at most so many; d itself if it has no more.
+// thin is every s-th row of d, for the smallest s that leaves at most so many; d itself if it has few
+// more.
 func (d *Data) thin(most int) *Data {
 	n := d.Rows()
-	if n <= most {
+	if n <= most*4/3 {
 		return d
 	}
 	step := (n + most - 1) / most
