@@ -183,8 +183,6 @@ func FuzzReadSnapshot(f *testing.F) {
 	payload := payloadOf(f, handmade(f))
 	f.Add(payload)
 	f.Add(payload[:len(payload)/2])
-	table, _ := recipe{rows: 60, numbers: 1, classes: 2, apart: 3, seed: 4}.table()
-	f.Add(payloadOf(f, fit(f, quick(), table).Snapshot))
 	f.Fuzz(func(t *testing.T, b []byte) {
 		tryPayload(t, b)
 		if _, err := ReadSnapshot(bytes.NewReader(b)); err != nil && !errors.Is(err, ErrSnapshot) {

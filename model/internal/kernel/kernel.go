@@ -22,15 +22,18 @@ type Map struct {
 // jitter keeps the kernel matrix of near-equal landmarks invertible.
 const jitter = 1e-3
 
-// New takes up to m random rows of x (n·stride, the first dim numbers of each) as landmarks. It returns nil if their
-// kernel matrix cannot be factored. Cost O(m³ + m²·dim).
+// New takes up to m random rows of x (n·stride, the first dim numbers of each) as landmarks. It returns nil if there
+// are no numbers or the landmarks' kernel matrix cannot be factored. Cost O(m³ + m²·dim).
 func New(x []float32, n, stride, dim, m int, gamma float64, rng *rand.Rand) *Map {
 	m = min(m, n)
+	if m == 0 || dim == 0 {
+		return nil
+	}
 	k := &Map{Gamma: gamma, Dim: dim, Landmarks: make([]float32, 0, m*dim)}
 	for _, i := range rng.Perm(n)[:m] {
 		k.Landmarks = append(k.Landmarks, x[i*stride:i*stride+dim]...)
 	}
-	k.Init()
+	k.measure()
 	gram := mat.NewSymDense(m, nil)
 	row := make([]float64, m)
 	for i := range m {
@@ -61,8 +64,8 @@ func New(x []float32, n, stride, dim, m int, gamma float64, rng *rand.Rand) *Map
 	return k
 }
 
-// Init fills what is derived from the exported fields, after loading.
-func (k *Map) Init() {
+// measure fills norm.
+func (k *Map) measure() {
 	k.norm = make([]float64, k.Size())
 	for j := range k.norm {
 		for _, v := range k.Landmarks[j*k.Dim : (j+1)*k.Dim] {
@@ -72,7 +75,7 @@ func (k *Map) Init() {
 }
 
 // Size is the number of landmarks, which is also that of features.
-func (k *Map) Size() int { return len(k.Landmarks) / max(k.Dim, 1) }
+func (k *Map) Size() int { return len(k.Landmarks) / k.Dim }
 
 // values writes the kernel between u and every landmark. len(dst) = Size().
 func (k *Map) values(u []float32, dst []float64) {
@@ -121,6 +124,3 @@ func (k *Map) Fold(w []float64) []float64 {
 	}
 	return out
 }
-
-// Values is values for callers outside.
-func (k *Map) Values(u []float32, dst []float64) { k.values(u, dst) }
