@@ -153,14 +153,20 @@ func sortedNames(names []string, want func(int) bool) []int {
 // finite tells whether no number of row i is infinite. Missing values (NaN) are allowed.
 func finite(t *Table, i int) bool {
 	for k := range t.Columns {
-		c := &t.Columns[k]
-		if c.Kind == Category {
-			continue
+		if !t.Columns[k].finite(i) {
+			return false
 		}
-		for _, v := range c.Values[i*c.Size : (i+1)*c.Size] {
-			if math.IsInf(v, 0) {
-				return false
-			}
+	}
+	return true
+}
+
+func (c *Column) finite(i int) bool {
+	if c.Kind == Category {
+		return true
+	}
+	for _, v := range c.Values[i*c.Size : (i+1)*c.Size] {
+		if math.IsInf(v, 0) {
+			return false
 		}
 	}
 	return true

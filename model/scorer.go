@@ -60,8 +60,11 @@ func (sc *Scorer) reason(t *Table, i int) Reason {
 		return NoLabel
 	case sc.class[label] < 0:
 		return NewClass
-	case !finite(t, i):
-		return NotFinite
+	}
+	for _, k := range sc.column {
+		if !t.Columns[k].finite(i) {
+			return NotFinite
+		}
 	}
 	return Scored
 }
