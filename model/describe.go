@@ -12,7 +12,11 @@ func (f *fitting) facts(layer *noise.Layer, found *noise.Facts, warm bool) Facts
 	k := len(f.classes)
 	out := Facts{Rows: len(f.rows), Classes: f.classes, ClassRows: f.counts, Sources: f.sources, Warm: warm}
 	out.Choice = f.choice(layer)
-	for _, t := range f.tallies {
+	var tallies []learn.Tally
+	for _, fold := range f.folds {
+		tallies = learn.AddTally(tallies, f.tallies[fold.Number])
+	}
+	for _, t := range tallies {
 		out.Chains = append(out.Chains, Chain{Name: t.Name, Tried: t.Tried, Won: t.Won, MeanGap: t.Gap / float64(max(1, t.Tried))})
 	}
 	n := &out.Noise

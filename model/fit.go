@@ -21,13 +21,13 @@ type fitting struct {
 	votes   [learn.Forests][]float64
 	scores  map[learn.Setting][]float64 // out of fold, by setting
 	linear  map[learn.Setting]learn.Linear
-	tallies []learn.Tally
+	tallies map[int][]learn.Tally // by fold number, so that sums do not depend on which fold is done first
 	done    int
 }
 
 // newFitting deals the rows into folds; last, if any, is the training this one continues.
 func newFitting(in *intake, o Options, last *fitting) *fitting {
-	f := &fitting{intake: in, opt: o, scores: map[learn.Setting][]float64{}, linear: map[learn.Setting]learn.Linear{}}
+	f := &fitting{intake: in, opt: o, scores: map[learn.Setting][]float64{}, linear: map[learn.Setting]learn.Linear{}, tallies: map[int][]learn.Tally{}}
 	for i := range f.votes {
 		f.votes[i] = make([]float64, in.data.Rows()*in.data.Classes)
 	}
@@ -102,7 +102,7 @@ func (f *fitting) grow(ctx context.Context, stage uint64) error {
 func (f *fitting) solve(fold *learn.Fold, design int, lambda float64, qs []float64, o chain.PortfolioOptions, rng *rand.Rand, s *chain.Scratch) {
 	linear, tally := fold.Solve(f.data, design, lambda, qs, o, rng, s)
 	f.mu.Lock()
-	f.tallies = learn.AddTally(f.tallies, tally)
+	f.tallies[fold.Number] = learn.AddTally(f.tallies[fold.Number], tally)
 	for i := range linear {
 		set := linear[i].Setting
 		if fold.Number == wholeFold {
