@@ -127,7 +127,9 @@ func (c *candidate) penalty(d *Data) float64 {
 		v += 1 + (2+0.5*math.Log(k*(k-1)))*float64(len(c.shape.entries))
 	}
 	if c.shape.boundary {
-		v += 2
+		// Two parameters, each at ½·ln n as in the Bayesian information criterion (Schwarz 1978) plus one: honest
+		// overlap looks much like flips near the boundary, so these have to be plain.
+		v += 2 + math.Log(float64(d.Rows()))
 	}
 	if c.shape.source {
 		v += c.sourcePenalty(d)
