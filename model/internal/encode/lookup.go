@@ -71,16 +71,20 @@ func (l *lookup) findKnots(u *Number) {
 
 // segment is the straight piece above knot i−1 up to knot i, flat outside the knots.
 func (u *Number) segment(i int) segment {
-	switch n := len(u.Knots); {
-	case n == 0:
+	n := len(u.Knots)
+	if n == 0 {
 		return segment{}
-	case i == 0:
-		return segment{at: u.Knots[0], normal: u.Normal[0]}
-	case i == n:
-		return segment{at: u.Knots[n-1], normal: u.Normal[n-1]}
+	}
+	flat := segment{normal: u.Normal[min(i, n-1)]}
+	if i == 0 || i == n {
+		return flat
+	}
+	gap := u.Knots[i] - u.Knots[i-1]
+	slope := (u.Normal[i] - u.Normal[i-1]) / gap
+	if math.IsInf(gap, 0) || math.IsInf(slope, 0) {
+		return flat // knots too far apart, or too near, for a slope
 	}
 	// The upper knot is the anchor, so that its own value is exact.
-	slope := (u.Normal[i] - u.Normal[i-1]) / (u.Knots[i] - u.Knots[i-1])
 	return segment{at: u.Knots[i], normal: u.Normal[i], slope: slope}
 }
 
