@@ -63,7 +63,7 @@ func (in *intake) choose(scores map[learn.Setting][]float64, trial []int32) []le
 func (in *intake) subset(rows []int32, members ...[]float64) *noise.Data {
 	d := in.data
 	if rows == nil {
-		return &noise.Data{Classes: d.Classes, Members: members, Observed: d.Labels, Source: d.Source, Sources: d.Sources}
+		return &noise.Data{Classes: d.Classes, Members: members, Observed: d.Labels, Source: d.Source, Sources: d.Sources, Workers: d.Workers}
 	}
 	k := d.Classes
 	out := &noise.Data{Classes: k, Sources: d.Sources, Observed: make([]int32, len(rows)), Members: make([][]float64, len(members))}

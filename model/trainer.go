@@ -58,13 +58,14 @@ type Trainer struct {
 func NewTrainer(o Options) *Trainer { return &Trainer{opt: o} }
 
 // Fit trains on t, which it neither keeps nor changes. The first call searches features, λ and q (cold); later ones
-// start from the last result (warm) while columns and classes stay the same and the number of rows is alike. Errors: ErrTable, ErrTooFew, ErrOneClass,
-// or the context's.
+// start from the last result (warm) while columns and classes stay the same and the number of rows is alike. Errors:
+// ErrTable, ErrTooFew, ErrOneClass, or the context's.
 func (tr *Trainer) Fit(ctx context.Context, t *Table) (*Result, error) {
 	in, err := newIntake(t)
 	if err != nil {
 		return nil, err
 	}
+	in.data.Workers = tr.opt.Workers
 	warm := tr.last != nil && tr.warm < maxWarm && tr.alike(len(in.rows)) && in.continues(tr.last.intake)
 	var layer *noise.Layer
 	var facts *noise.Facts

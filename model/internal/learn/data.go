@@ -19,6 +19,7 @@ type Data struct {
 	Labels  []int32       // N
 	Source  []int32       // N, or nil without sources
 	Sources int
+	Workers int // goroutines of what is not done fold by fold
 
 	// Pairs are the pairs of classes, first below second, that linear scorers tell apart; see ChoosePairs.
 	Pairs [][2]int

@@ -73,7 +73,7 @@ var pairRates = [...]float64{0.001, 0.05, 0.10, 0.20, 0.30, 0.40}
 // twoRates integrates the rates of two classes out. Each model starts from the single-rate model, in singles, nearest
 // to its mean rate.
 func twoRates(d *Data, singles []*candidate, prefix string) []*candidate {
-	var out []*candidate
+	var jobs []job
 	for _, a := range pairRates {
 		for _, b := range pairRates {
 			if a == b {
@@ -87,10 +87,10 @@ func twoRates(d *Data, singles []*candidate, prefix string) []*candidate {
 			}
 			p := near.p.clone()
 			copy(p.Flip, []float64{1 - a, a, b, 1 - b})
-			out = append(out, run(d, p, fmt.Sprintf("%stwo rates %.2f %.2f", prefix, a, b), shape{flips: paired}, rateSteps))
+			jobs = append(jobs, job{p, fmt.Sprintf("%stwo rates %.2f %.2f", prefix, a, b), shape{flips: paired}, rateSteps})
 		}
 	}
-	return out
+	return runAll(d, jobs)
 }
 
 // run fits one model and gives its evidence.
@@ -191,7 +191,8 @@ func chosenEntries(d *Data, one, all *Params) []int {
 }
 
 // extend adds models with boundary flips, source factors, and both to the single model and the better of the others.
-func extend(d *Data, all []*candidate) (out []*candidate) {
+func extend(d *Data, all []*candidate) []*candidate {
+	var jobs []job
 	var bases []*candidate
 	var better *candidate
 	for _, c := range all {
@@ -222,8 +223,8 @@ func extend(d *Data, all []*candidate) (out []*candidate) {
 				p.Rho = slices.Repeat([]float64{1}, d.Sources)
 				name += "+source"
 			}
-			out = append(out, run(d, p, name, s, coldSteps))
+			jobs = append(jobs, job{p, name, s, coldSteps})
 		}
 	}
-	return out
+	return runAll(d, jobs)
 }

@@ -20,6 +20,7 @@ type Data struct {
 	Observed []int32     // n, in [0, k)
 	Source   []int32     // n, −1: none; nil when there are no sources
 	Sources  int
+	Workers  int // goroutines that fit models; the result does not depend on it; 0 means 1
 }
 
 // Rows is the number of rows.

@@ -12,13 +12,14 @@ func Refit(d *Data, last *Layer) (*Layer, *Facts) {
 	if last == nil {
 		return Fit(d)
 	}
-	all := []*candidate{run(d, last.noiseless(d.Classes), "none", shape{flips: none}, warmSteps)}
+	jobs := []job{{last.noiseless(d.Classes), "none", shape{flips: none}, warmSteps}}
 	for i := range last.Models {
 		m := &last.Models[i]
 		if m.shape.flips != none && (m.Weight > 0.02 || i < 2) {
-			all = append(all, run(d, m.P.clone(), m.Name, m.shape, warmSteps))
+			jobs = append(jobs, job{m.P.clone(), m.Name, m.shape, warmSteps})
 		}
 	}
+	all := runAll(d, jobs)
 	l := average(d.Classes, all)
 	l.fitSteps(d)
 	return l, newFacts(d, l, all)

@@ -15,7 +15,7 @@ func (d *Data) thin(most int) *Data {
 	}
 	step := (n + most - 1) / most
 	k := d.Classes
-	out := &Data{Classes: k, Sources: d.Sources, Members: make([][]float64, len(d.Members))}
+	out := &Data{Classes: k, Sources: d.Sources, Workers: d.Workers, Members: make([][]float64, len(d.Members))}
 	for i := 0; i < n; i += step {
 		out.Observed = append(out.Observed, d.Observed[i])
 		if d.Source != nil {
