@@ -67,7 +67,7 @@ func (k *Kernel) values(u []float32, dst []float32) {
 // pieces is the number of parts a power of two is cut into.
 const pieces = 64
 
-// decay is exp(−y) to six digits: a power of ½ from a table times a short series. Negative y, which only rounding
+// decay is exp(−y) with a relative error below 5·10⁻⁶: a power of ½ from a table times a short series. Negative y, which only rounding
 // brings about, and NaN count as 0.
 func (k *Kernel) decay(y float32) float32 {
 	const last = 87 // exp(−87) is about the smallest float32 of full precision
