@@ -78,7 +78,7 @@ func TestScoreIsTheRowsOwn(t *testing.T) {
 	table, _ := small.table()
 	s := fit(t, quick(), table).Snapshot
 	rows := small
-	rows.first, rows.rows = 300, 1100 // more than a block
+	rows.first, rows.rows = 300, 2100 // more than a block
 	fresh, _ := rows.table()
 	want := scores(t, s, fresh)
 	turned := *fresh

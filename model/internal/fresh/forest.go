@@ -23,14 +23,18 @@ type Node struct {
 	Split   bool
 }
 
-// tree says where a tree's root and its first leaf stand.
-type tree struct{ root, leaf int32 }
+// tree says where a tree's root and its first leaf stand, and whether it has at most reach nodes.
+type tree struct {
+	root, leaf int32
+	narrow     bool
+}
 
-// A word holds a node: from the top, 32 bits index of the left child, 1 bit leaf, 7 bits leaf number, 8 bits cut, 16 bits
-// feature. A leaf is its own child, and no bin is above its cut, so that a walk may pass it again and again; its number,
-// counted in its tree, fills the other 7 bits and those of the feature.
+// A word holds a node: from the top, 32 bits left child, counted from the root, 8 bits 255 − cut, 1 bit leaf, 7 bits leaf
+// number, 16 bits feature. Adding a row's bin to the upper 40 bits carries into the child just when the bin is above the
+// cut. A leaf is its own child, and no bin carries, so that a walk may pass it again and again; its number, counted in its
+// tree, fills the 7 bits and those of the feature.
 const (
-	leafBit   = 1 << 31
+	leafBit   = 1 << 23
 	maxLeaves = 1 << 23 // of a tree
 )
 
@@ -74,34 +78,36 @@ func (f *Forest) Leaves() int {
 
 // prepare derives steps and trees and tells whether Nodes are whole trees.
 func (f *Forest) prepare() error {
-	f.steps, f.trees = make([]uint64, len(f.Nodes)), nil
+	f.steps, f.trees = make([]uint64, len(f.Nodes)+reach), nil
 	leaves := int32(0)
 	for i := 0; i < len(f.Nodes); {
 		t := tree{root: int32(i), leaf: leaves}
-		f.trees = append(f.trees, t)
 		next := i + 1
 		for ; i < next; i++ {
 			if i >= len(f.Nodes) {
-				return fmt.Errorf("tree %d lacks nodes", len(f.trees)-1)
+				return fmt.Errorf("tree %d lacks nodes", len(f.trees))
 			}
 			n := f.Nodes[i]
 			if n.Split {
-				f.steps[i] = uint64(next)<<32 | uint64(n.Cut)<<16 | uint64(n.Feature)
+				f.steps[i] = uint64(next-int(t.root))<<32 | uint64(255-n.Cut)<<24 | uint64(n.Feature)
 				next += 2
 				continue
 			}
 			id := uint64(leaves - t.leaf)
-			f.steps[i] = uint64(i)<<32 | leafBit | id>>16<<24 | 0xff<<16 | id&0xffff
+			f.steps[i] = uint64(i-int(t.root))<<32 | leafBit | id
 			leaves++
 		}
 		if leaves-t.leaf > maxLeaves {
-			return fmt.Errorf("tree %d has %d leaves", len(f.trees)-1, leaves-t.leaf)
+			return fmt.Errorf("tree %d has %d leaves", len(f.trees), leaves-t.leaf)
 		}
+		t.narrow = next-int(t.root) <= reach
+		f.trees = append(f.trees, t)
 	}
 	return nil
 }
 
-// reach is how far a feature number can reach: the array behind a walked row is that long, so that no index leaves it.
+// reach is how far an index of 16 bits reaches: arrays behind walked rows and trees are that long, so that no index leaves
+// them.
 const reach = 1 << 16
 
 // sum writes into dst (rows·columns) the sum over the trees of the values of each row's leaves. bins holds rows of d bytes
@@ -122,24 +128,18 @@ func (f *Forest) sum(bins []uint8, d, rows int, acc []uint64, dst []float64) {
 
 // sumWords is sum's loop for leaves of one word.
 func (f *Forest) sumWords(bins []uint8, d, rows int, acc []uint64) {
+	var found [lanesWalked]uint64
 	for _, t := range f.trees {
 		values := f.Values[t.leaf:]
 		r := 0
-		for ; r+4 <= rows; r += 4 {
-			a, b, c, e := f.walk4(t.root, bins[r*d:], d)
-			at := (*[8]uint64)(acc[2*r:])
-			v := values[leafOf(a)]
-			at[0] += v & pairs
-			at[1] += v >> 16 & pairs
-			v = values[leafOf(b)]
-			at[2] += v & pairs
-			at[3] += v >> 16 & pairs
-			v = values[leafOf(c)]
-			at[4] += v & pairs
-			at[5] += v >> 16 & pairs
-			v = values[leafOf(e)]
-			at[6] += v & pairs
-			at[7] += v >> 16 & pairs
+		for ; t.narrow && r+lanesWalked <= rows; r += lanesWalked {
+			f.walkSome(t.root, bins[r*d:], d, &found)
+			at := (*[2 * lanesWalked]uint64)(acc[2*r:])
+			for l, w := range found {
+				v := values[leafOf(w)]
+				at[2*l] += v & pairs
+				at[2*l+1] += v >> 16 & pairs
+			}
 		}
 		for ; r < rows; r++ {
 			f.add(t.leaf+leafOf(f.walk(t.root, bins[r*d:])), acc[2*r:])
@@ -150,15 +150,14 @@ func (f *Forest) sumWords(bins []uint8, d, rows int, acc []uint64) {
 // sumRows is sum's loop for leaves of any number of words.
 func (f *Forest) sumRows(bins []uint8, d, rows int, acc []uint64) {
 	w := 2 * f.words()
+	var found [lanesWalked]uint64
 	for _, t := range f.trees {
 		r := 0
-		for ; r+4 <= rows; r += 4 {
-			a, b, c, e := f.walk4(t.root, bins[r*d:], d)
-			at := acc[r*w:]
-			f.add(t.leaf+leafOf(a), at)
-			f.add(t.leaf+leafOf(b), at[w:])
-			f.add(t.leaf+leafOf(c), at[2*w:])
-			f.add(t.leaf+leafOf(e), at[3*w:])
+		for ; t.narrow && r+lanesWalked <= rows; r += lanesWalked {
+			f.walkSome(t.root, bins[r*d:], d, &found)
+			for l, at := range found {
+				f.add(t.leaf+leafOf(at), acc[(r+l)*w:])
+			}
 		}
 		for ; r < rows; r++ {
 			f.add(t.leaf+leafOf(f.walk(t.root, bins[r*d:])), acc[r*w:])
@@ -167,36 +166,38 @@ func (f *Forest) sumRows(bins []uint8, d, rows int, acc []uint64) {
 }
 
 // leafOf is the number, in its tree, of the leaf in word w.
-func leafOf(w uint64) int32 { return int32(w>>24&0x7f<<16 | w&0xffff) }
+func leafOf(w uint64) int32 { return int32(w & (leafBit - 1)) }
 
 // walk is the word of one row's leaf.
 func (f *Forest) walk(root int32, bins []uint8) uint64 {
-	row := (*[reach]uint8)(bins)
-	w := f.steps[root]
+	steps, row := f.steps[root:], (*[reach]uint8)(bins)
+	w := steps[0]
 	for w&leafBit == 0 {
-		w = f.steps[child(w, row)]
+		w = steps[uint32(child(w, row))]
 	}
 	return w
 }
 
-// walk4 is the words of the leaves of four rows, walked side by side and without branches, so that their loads overlap.
-func (f *Forest) walk4(root int32, bins []uint8, d int) (a, b, c, e uint64) {
-	steps := f.steps
-	p, q := (*[reach]uint8)(bins), (*[reach]uint8)(bins[d:])
-	r, s := (*[reach]uint8)(bins[2*d:]), (*[reach]uint8)(bins[3*d:])
-	a = steps[root]
-	b, c, e = a, a, a
-	for a&b&c&e&leafBit == 0 {
-		a = steps[child(a, p)]
-		b = steps[child(b, q)]
-		c = steps[child(c, r)]
-		e = steps[child(e, s)]
+// lanesWalked is how many rows are walked side by side, so that their loads overlap.
+const lanesWalked = 8
+
+// walkSome finds the words of the leaves of lanesWalked rows in a narrow tree, without branches on what they hold.
+func (f *Forest) walkSome(root int32, bins []uint8, d int, found *[lanesWalked]uint64) {
+	steps := (*[reach]uint64)(f.steps[root:])
+	a := steps[0]
+	b, c, e, g, h, i, j := a, a, a, a, a, a, a
+	for a&b&c&e&g&h&i&j&leafBit == 0 {
+		a = steps[uint16((a>>24+uint64(bins[int(uint16(a))]))>>8)]
+		b = steps[uint16((b>>24+uint64(bins[d+int(uint16(b))]))>>8)]
+		c = steps[uint16((c>>24+uint64(bins[2*d+int(uint16(c))]))>>8)]
+		e = steps[uint16((e>>24+uint64(bins[3*d+int(uint16(e))]))>>8)]
+		g = steps[uint16((g>>24+uint64(bins[4*d+int(uint16(g))]))>>8)]
+		h = steps[uint16((h>>24+uint64(bins[5*d+int(uint16(h))]))>>8)]
+		i = steps[uint16((i>>24+uint64(bins[6*d+int(uint16(i))]))>>8)]
+		j = steps[uint16((j>>24+uint64(bins[7*d+int(uint16(j))]))>>8)]
 	}
-	return a, b, c, e
+	*found = [lanesWalked]uint64{a, b, c, e, g, h, i, j}
 }
 
 // child is the node under w that a row goes on to.
-func child(w uint64, row *[reach]uint8) uint32 {
-	above := (uint32(w>>16)&0xff - uint32(row[uint16(w)])) >> 31
-	return uint32(w>>32) + above
-}
+func child(w uint64, row *[reach]uint8) uint64 { return (w>>24 + uint64(row[uint16(w)])) >> 8 }

@@ -4,7 +4,7 @@ import "math"
 
 // Rows is the most rows of a block for rows of this many numbers and bins: enough that a tree, once in the cache, is
 // used many times, few enough that the block stays there too.
-func (m *Machine) Rows() int { return min(max(1<<20/(4*m.Dense+m.Bins), 16), 512) }
+func (m *Machine) Rows() int { return min(max(1<<20/(4*m.Dense+m.Bins), 16), 1024) }
 
 // Scratch is the memory of one block. It belongs to one goroutine.
 type Scratch struct {
