@@ -128,6 +128,8 @@ func (t *target) fault(what string, kind, err error) error {
 		e.Do = "the disk is full: make room or write elsewhere"
 	case errors.Is(err, syscall.EDQUOT):
 		e.Do = "the quota is used up: make room or write elsewhere"
+	case errors.Is(err, syscall.EFBIG):
+		e.Do = "the largest file size is reached: raise the limit or write elsewhere"
 	case errors.Is(err, fs.ErrPermission):
 		e.Do = "check the permissions of its folder"
 	case errors.Is(err, syscall.EROFS):
