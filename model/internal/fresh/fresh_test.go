@@ -221,3 +221,22 @@ func TestCheckRefusesWhatScoreCannotRun(t *testing.T) {
 		})
 	}
 }
+
+// A tree too large for indexes of 16 bits is walked row by row.
+func TestLargeTreesAreWalkedToo(t *testing.T) {
+	const rows, bins = 110000, 4
+	rng := rand.New(rand.NewPCG(6, 1))
+	from, b := grown(rng, rows, bins, 2, 1)
+	p, place := packForest(from, 1)
+	if p.trees[0].narrow {
+		t.Fatalf("%d nodes are few", len(p.Nodes))
+	}
+	p.set(0, func(l int) float64 { return float64(place[l]) })
+	got := make([]float64, rows)
+	p.sum(append(b, make([]uint8, reach)...), bins, rows, make([]uint64, 2*rows), got)
+	for i := 0; i < rows; i += 7 {
+		if want := float64(from.Trees[0].Leaf(b[i*bins : (i+1)*bins])); math.Abs(got[i]-want) > p.Step[0] {
+			t.Fatalf("row %d is in leaf %v, wanted %v", i, got[i], want)
+		}
+	}
+}
