@@ -23,52 +23,57 @@ type Options struct {
 // Grow grows n trees. Each is grown on a random 63 % of the rows; of √D random features, each with Cuts random cuts,
 // a node takes the one with the best class-balanced Gini criterion. Cost O(n · len(rows) · √D · depth).
 func Grow(b *Bins, rows Rows, classes, n int, o Options, rng *rand.Rand) []*Tree {
-	g := &grower{b: b, rows: rows.At, labels: rows.Label, chance: rows.Chance, o: o, rng: rng, k: classes,
+	g := &grower{b: b, rows: rows, labels: rows.Label, o: o, rng: rng, k: classes,
 		tries:  int(math.Ceil(math.Sqrt(float64(b.D)))),
 		left:   make([]float64, classes),
 		total:  make([]float64, classes),
 		weight: make([]float64, classes),
 		counts: make([]int32, classes),
-		spare:  make([]int32, len(rows.At)),
+		in:     make([]drawn, 0, len(rows.At)),
+		spare:  make([]drawn, len(rows.At)),
 	}
 	if rows.Chance != nil {
 		g.labels = make([]int32, len(rows.At))
 	}
 	trees := make([]*Tree, n)
 	for i := range trees {
-		trees[i] = g.tree(rows.Key)
+		trees[i] = g.tree()
 	}
 	return trees
 }
 
 type grower struct {
 	b                   *Bins
-	rows, labels        []int32
-	chance              []float64
+	rows                Rows
+	labels              []int32 // of rows, as the tree sees them
 	o                   Options
 	rng                 *rand.Rand
 	k, tries            int
 	weight, left, total []float64 // by class
 	counts              []int32
-	idx, spare          []int32 // positions in rows of the tree's in-bag rows
+	in, spare           []drawn // the tree's in-bag rows
 	stack               []span
 	t                   *Tree
 }
 
-// span is a node still to be split: idx[lo:hi].
+// drawn is one in-bag row: where it stands in the bins, and its label. Both lie together so that a split reads them in one
+// sweep.
+type drawn struct{ row, label int32 }
+
+// span is a node still to be split: in[lo:hi].
 type span struct{ lo, hi, node, depth int32 }
 
-func (g *grower) tree(keys []uint64) *Tree {
+func (g *grower) tree() *Tree {
 	g.t = &Tree{Nodes: make([]Node, 1), Seed: g.rng.Uint64()}
 	g.relabel()
 	g.balance()
-	g.idx = g.idx[:0]
-	for i, k := range keys {
+	g.in = g.in[:0]
+	for i, k := range g.rows.Key {
 		if g.t.InBag(k) {
-			g.idx = append(g.idx, int32(i))
+			g.in = append(g.in, drawn{g.rows.At[i], g.labels[i]})
 		}
 	}
-	g.stack = append(g.stack[:0], span{hi: int32(len(g.idx))})
+	g.stack = append(g.stack[:0], span{hi: int32(len(g.in))})
 	for len(g.stack) > 0 {
 		s := g.stack[len(g.stack)-1]
 		g.stack = g.stack[:len(g.stack)-1]
@@ -90,12 +95,12 @@ func (g *grower) tree(keys []uint64) *Tree {
 
 // relabel draws this tree's labels.
 func (g *grower) relabel() {
-	if g.chance == nil {
+	if g.rows.Chance == nil {
 		return
 	}
 	for i := range g.labels {
 		u := g.rng.Float64()
-		p := g.chance[i*g.k : (i+1)*g.k]
+		p := g.rows.Chance[i*g.k : (i+1)*g.k]
 		c := 0
 		for c < g.k-1 && u >= p[c] {
 			u -= p[c]
@@ -122,8 +127,8 @@ func (g *grower) leaf(s span) {
 	id := len(g.t.Shares) / g.k
 	g.t.Nodes[s.node] = Node{Child: ^int32(id)}
 	clear(g.counts)
-	for _, i := range g.idx[s.lo:s.hi] {
-		g.counts[g.labels[i]]++
+	for _, r := range g.in[s.lo:s.hi] {
+		g.counts[r.label]++
 	}
 	n := float32(s.hi - s.lo)
 	for _, c := range g.counts {
@@ -137,7 +142,7 @@ func (g *grower) leaf(s span) {
 
 // split looks for the best of some random cuts of s; features that do not vary in it are drawn again, within limits.
 func (g *grower) split(s span) (feature int, cut uint8, ok bool) {
-	in := g.idx[s.lo:s.hi]
+	in := g.in[s.lo:s.hi]
 	if len(in) < 2*g.o.MinLeaf || len(in) < 2 || int(s.depth) >= g.o.MaxDepth || !g.countTotal(in) {
 		return 0, 0, false
 	}
@@ -147,7 +152,7 @@ func (g *grower) split(s span) (feature int, cut uint8, ok bool) {
 		col := g.b.Cols[d]
 		varies := false
 		for range g.o.Cuts {
-			at := col[g.rows[in[g.rng.IntN(len(in))]]]
+			at := col[in[g.rng.IntN(len(in))].row]
 			n := g.countLeft(in, col, at)
 			if n < g.o.MinLeaf || len(in)-n < g.o.MinLeaf || n == 0 || n == len(in) {
 				continue
@@ -165,10 +170,10 @@ func (g *grower) split(s span) (feature int, cut uint8, ok bool) {
 }
 
 // countTotal counts classes in a node and tells whether there are at least two.
-func (g *grower) countTotal(in []int32) bool {
+func (g *grower) countTotal(in []drawn) bool {
 	clear(g.counts)
-	for _, i := range in {
-		g.counts[g.labels[i]]++
+	for _, r := range in {
+		g.counts[r.label]++
 	}
 	kinds := 0
 	for c, n := range g.counts {
@@ -181,12 +186,21 @@ func (g *grower) countTotal(in []int32) bool {
 }
 
 // countLeft fills left with the class weights of the rows at or below the cut and returns their number.
-func (g *grower) countLeft(in []int32, col []uint8, cut uint8) int {
-	counts, rows, labels := g.counts, g.rows, g.labels
-	clear(counts)
-	for _, i := range in {
-		// 1 when col ≤ cut, without a branch.
-		counts[labels[i]] += int32(uint32(int32(col[rows[i]])-int32(cut)-1) >> 31)
+func (g *grower) countLeft(in []drawn, col []uint8, cut uint8) int {
+	counts := g.counts
+	if g.k == 2 {
+		all, ones := int32(0), int32(0)
+		for _, r := range in {
+			below := int32(uint32(int32(col[r.row])-int32(cut)-1) >> 31) // 1 when col ≤ cut, without a branch
+			all += below
+			ones += below & r.label
+		}
+		counts[0], counts[1] = all-ones, ones
+	} else {
+		clear(counts)
+		for _, r := range in {
+			counts[r.label] += int32(uint32(int32(col[r.row])-int32(cut)-1) >> 31)
+		}
 	}
 	n := 0
 	for c, m := range counts {
@@ -212,17 +226,16 @@ func (g *grower) gain() float64 {
 // part moves the rows at or below the cut to the front of s, both sides in their old order.
 func (g *grower) part(s span, feature int, cut uint8) int32 {
 	col := g.b.Cols[feature]
-	in := g.idx[s.lo:s.hi]
+	in := g.in[s.lo:s.hi]
+	spare := g.spare[:len(in)]
 	n, m := 0, 0
-	for _, i := range in {
-		if col[g.rows[i]] <= cut {
-			in[n] = i
-			n++
-		} else {
-			g.spare[m] = i
-			m++
-		}
+	for _, r := range in {
+		// Written to both sides, kept on one: no branch.
+		in[n], spare[m] = r, r
+		below := int(uint32(int32(col[r.row])-int32(cut)-1) >> 31)
+		n += below
+		m += 1 - below
 	}
-	copy(in[n:], g.spare[:m])
+	copy(in[n:], spare[:m])
 	return s.lo + int32(n)
 }
