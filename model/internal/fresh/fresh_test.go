@@ -48,7 +48,7 @@ func TestPackedForestSumsTheSameLeaves(t *testing.T) {
 			t.Fatal(err)
 		}
 		got := make([]float64, rows*columns)
-		p.sum(append(slices.Clone(b), make([]uint8, reach)...), bins, rows, make([]uint64, rows*2*p.words()), got)
+		p.sum(append(slices.Clone(b), make([]uint8, forest.Reach)...), bins, rows, make([]uint64, rows*2*p.words()), got)
 		leaves := make([]int32, 5)
 		for i := range rows {
 			from.Walk(b[i*bins:(i+1)*bins], leaves)
@@ -233,7 +233,7 @@ func TestLargeTreesAreWalkedToo(t *testing.T) {
 	}
 	p.set(0, func(l int) float64 { return float64(place[l]) })
 	got := make([]float64, rows)
-	p.sum(append(b, make([]uint8, reach)...), bins, rows, make([]uint64, 2*rows), got)
+	p.sum(append(b, make([]uint8, forest.Reach)...), bins, rows, make([]uint64, 2*rows), got)
 	for i := 0; i < rows; i += 7 {
 		if want := float64(from.Trees[0].Leaf(b[i*bins : (i+1)*bins])); math.Abs(got[i]-want) > p.Step[0] {
 			t.Fatalf("row %d is in leaf %v, wanted %v", i, got[i], want)

@@ -1,6 +1,10 @@
 package fresh
 
-import "math"
+import (
+	"math"
+
+	"labelweir/model/internal/forest"
+)
 
 // Rows is the most rows of a block for rows of this many numbers and bins: enough that a tree, once in the cache, is
 // used many times, few enough that the block stays there too.
@@ -20,7 +24,7 @@ type Scratch struct {
 // NewScratch returns scratch for blocks of m.Rows() rows.
 func (m *Machine) NewScratch() *Scratch {
 	n := m.Rows()
-	s := &Scratch{X: make([]float32, n*m.Dense), Bins: make([]uint8, n*m.Bins+reach)}
+	s := &Scratch{X: make([]float32, n*m.Dense), Bins: make([]uint8, n*m.Bins+forest.Reach)}
 	for range m.Members {
 		s.Members = append(s.Members, make([]float64, n*m.Classes))
 	}

@@ -79,20 +79,29 @@ func (f *Fold) walk(which int, d *Data, first, count int) {
 	fo := forest.New(d.Classes, f.trees[which])
 	n, t := d.Rows(), len(fo.Trees)
 	out := make([]int32, n*t)
-	fresh := make([]bool, t)
-	for i := range count {
-		fresh[(first+i)%t] = true
-	}
-	// Tree by tree, so that a tree's nodes stay in the cache.
-	for j, tree := range fo.Trees {
-		first := fo.First[j]
-		for i := range n {
-			if fresh[j] || ids == nil || d.Old == nil || d.Old[i] < 0 {
-				out[i*t+j] = first + tree.Leaf(d.Bins.Row(i))
-			} else {
-				out[i*t+j] = ids[int(d.Old[i])*t+j] - was.First[j] + first
+	if ids == nil || d.Old == nil {
+		first, count = 0, t
+	} else {
+		shift := make([]int32, t)
+		for j := range shift {
+			shift[j] = fo.First[j] - was.First[j]
+		}
+		for i, old := range d.Old {
+			row := out[i*t : (i+1)*t]
+			if old < 0 {
+				fo.Walk(d.Bins.Row(i), row)
+				continue
+			}
+			for j, id := range ids[int(old)*t : int(old+1)*t] {
+				row[j] = id + shift[j]
 			}
 		}
+	}
+	// New trees one after the other, so that a tree's nodes stay in the cache.
+	var w forest.Walker
+	for i := range count {
+		j := (first + i) % t
+		w.Leaves(fo.Trees[j], d.Bins, fo.First[j], out[j:], t)
 	}
 	f.Forest[which], f.leaves[which] = fo, out
 }
