@@ -67,6 +67,23 @@ func (s Steps) WalkLanes(bins []uint8, d int, found *[Lanes]uint64) {
 	*found = [Lanes]uint64{a, b, c, e, g, h, i, j}
 }
 
+// WalkTrees finds the words of the leaves of one row in Lanes trees of at most Reach nodes, which begin at these places of
+// s. From the row on, Reach bins are there to be read.
+func (s Steps) WalkTrees(roots *[Lanes]int32, bins []uint8, found *[Lanes]uint64) {
+	row := (*[Reach]uint8)(bins)
+	for l, r := range roots {
+		found[l] = s[r]
+	}
+	for all := uint64(0); all&leafBit == 0; {
+		all = leafBit
+		for l, w := range found {
+			w = s[int(roots[l])+int(uint16((w>>24+uint64(row[uint16(w)]))>>8))]
+			found[l] = w
+			all &= w
+		}
+	}
+}
+
 // Walker finds the leaves of many rows in one tree after the other. It is scratch and belongs to one goroutine.
 type Walker struct{ steps Steps }
 

@@ -98,10 +98,21 @@ func (f *Forest) prepare() error {
 func (f *Forest) sum(bins []uint8, d, rows int, acc []uint64, dst []float64) {
 	w := 2 * f.words()
 	clear(acc[:rows*w])
-	if w == 2 {
-		f.sumWords(bins, d, rows, acc)
-	} else {
-		f.sumRows(bins, d, rows, acc)
+	whole := rows - rows%forest.Lanes
+	for _, t := range f.trees {
+		switch {
+		case !t.narrow:
+			for r := range rows {
+				f.add(t.leaf+forest.LeafOf(f.steps[t.root:].Walk(bins[r*d:])), acc[r*w:])
+			}
+		case w == 2:
+			f.sumWords(t, bins, d, whole, acc)
+		default:
+			f.sumRows(t, bins, d, whole, acc)
+		}
+	}
+	for r := whole; r < rows; r++ {
+		f.sumTrees(bins[r*d:], acc[r*w:])
 	}
 	n := len(f.Low)
 	for r := range rows {
@@ -109,42 +120,50 @@ func (f *Forest) sum(bins []uint8, d, rows int, acc []uint64, dst []float64) {
 	}
 }
 
-// sumWords is sum's loop for leaves of one word.
-func (f *Forest) sumWords(bins []uint8, d, rows int, acc []uint64) {
+// sumWords adds tree t for leaves of one word. rows is a multiple of forest.Lanes.
+func (f *Forest) sumWords(t tree, bins []uint8, d, rows int, acc []uint64) {
 	var found [forest.Lanes]uint64
-	for _, t := range f.trees {
-		steps, values := f.steps[t.root:], f.Values[t.leaf:]
-		r := 0
-		for ; t.narrow && r+forest.Lanes <= rows; r += forest.Lanes {
-			steps.WalkLanes(bins[r*d:], d, &found)
-			at := (*[2 * forest.Lanes]uint64)(acc[2*r:])
-			for l, w := range found {
-				v := values[forest.LeafOf(w)]
-				at[2*l] += v & pairs
-				at[2*l+1] += v >> 16 & pairs
-			}
-		}
-		for ; r < rows; r++ {
-			f.add(t.leaf+forest.LeafOf(steps.Walk(bins[r*d:])), acc[2*r:])
+	steps, values := f.steps[t.root:], f.Values[t.leaf:]
+	for r := 0; r < rows; r += forest.Lanes {
+		steps.WalkLanes(bins[r*d:], d, &found)
+		at := (*[2 * forest.Lanes]uint64)(acc[2*r:])
+		for l, w := range found {
+			v := values[forest.LeafOf(w)]
+			at[2*l] += v & pairs
+			at[2*l+1] += v >> 16 & pairs
 		}
 	}
 }
 
-// sumRows is sum's loop for leaves of any number of words.
-func (f *Forest) sumRows(bins []uint8, d, rows int, acc []uint64) {
+// sumRows adds tree t for leaves of any number of words. rows is a multiple of forest.Lanes.
+func (f *Forest) sumRows(t tree, bins []uint8, d, rows int, acc []uint64) {
 	w := 2 * f.words()
 	var found [forest.Lanes]uint64
-	for _, t := range f.trees {
-		steps := f.steps[t.root:]
-		r := 0
-		for ; t.narrow && r+forest.Lanes <= rows; r += forest.Lanes {
-			steps.WalkLanes(bins[r*d:], d, &found)
-			for l, at := range found {
-				f.add(t.leaf+forest.LeafOf(at), acc[(r+l)*w:])
-			}
+	steps := f.steps[t.root:]
+	for r := 0; r < rows; r += forest.Lanes {
+		steps.WalkLanes(bins[r*d:], d, &found)
+		for l, at := range found {
+			f.add(t.leaf+forest.LeafOf(at), acc[(r+l)*w:])
 		}
-		for ; r < rows; r++ {
-			f.add(t.leaf+forest.LeafOf(steps.Walk(bins[r*d:])), acc[r*w:])
+	}
+}
+
+// sumTrees adds all narrow trees for one row, several trees side by side.
+func (f *Forest) sumTrees(bins []uint8, acc []uint64) {
+	var roots [forest.Lanes]int32
+	var found [forest.Lanes]uint64
+	at, n := [forest.Lanes]int32{}, 0
+	for i, t := range f.trees {
+		if t.narrow {
+			roots[n], at[n] = t.root, t.leaf
+			n++
+		}
+		if n == forest.Lanes || n > 0 && i == len(f.trees)-1 {
+			f.steps.WalkTrees(&roots, bins, &found)
+			for l, w := range found[:n] {
+				f.add(at[l]+forest.LeafOf(w), acc)
+			}
+			n = 0
 		}
 	}
 }
