@@ -11,6 +11,10 @@ const (
 	strictness = 50.0
 	sureShare  = 0.1 // of a class's observed rows that count as its surest
 	sureRows   = 5   // at least so many
+
+	// ownRows is the cost in nats of a class that flips always and has no sure row of its own: a class nobody can point
+	// at can't be said to flip.
+	ownRows = 30.0
 )
 
 // sureness is the log-density, up to a constant, that the prior gives to the class probabilities of p.
@@ -44,6 +48,7 @@ func sureness(d *Data, p *Params) float64 {
 		}
 		t /= float64(m)
 		v -= strictness * share * float64(k) * (1 - t) * (1 - t)
+		v -= ownRows * (1 - p.Flip[c*k+c]) * (1 - t)
 	}
 	return v
 }
