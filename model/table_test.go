@@ -61,3 +61,18 @@ func TestKeysAreDistinct(t *testing.T) {
 		t.Errorf("key of row 0 is %x", k)
 	}
 }
+
+func TestTrainerRefusesFoldsOutOfRange(t *testing.T) {
+	for _, n := range []int{0, 1, 101} {
+		func() {
+			defer func() {
+				if recover() == nil {
+					t.Errorf("%d folds were taken", n)
+				}
+			}()
+			o := DefaultOptions()
+			o.Folds = n
+			NewTrainer(o)
+		}()
+	}
+}

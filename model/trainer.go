@@ -2,6 +2,7 @@ package model
 
 import (
 	"context"
+	"fmt"
 	"math"
 	"math/rand/v2"
 	"runtime"
@@ -12,7 +13,7 @@ import (
 
 // Options of a Trainer.
 type Options struct {
-	Folds     int     // parts of the window; a row is judged by the model that did not see its part; default 5. Small windows are cut into twice as many
+	Folds     int     // parts of the window, 2 to 100, small windows twice as many; a row's judge did not see its part; default 5
 	Seed      uint64  // of every random draw; default 1
 	Precision float64 // share of truly wrong labels wanted among held-back rows, in (0.5, 1); default 0.95
 	Workers   int     // goroutines; the result does not depend on it; default the number of cores
@@ -54,8 +55,13 @@ type Trainer struct {
 	stage uint64 // fits so far: each has random streams of its own
 }
 
-// NewTrainer returns a trainer without a past.
-func NewTrainer(o Options) *Trainer { return &Trainer{opt: o} }
+// NewTrainer returns a trainer without a past. It panics on a number of folds out of range.
+func NewTrainer(o Options) *Trainer {
+	if o.Folds < 2 || o.Folds > 100 {
+		panic(fmt.Sprintf("model: %d folds, want 2 to 100", o.Folds))
+	}
+	return &Trainer{opt: o}
+}
 
 // Fit trains on t, which it neither keeps nor changes. The first call searches features, λ and q (cold); later ones
 // start from the last result (warm) while columns and classes stay the same and the number of rows is alike. Errors:
