@@ -1,0 +1,87 @@
+// Package cell reads what the text of one cell means, and guesses what the cells of a column mean together. Nothing in
+// it allocates for a cell.
+package cell
+
+import (
+	"bytes"
+	"math"
+	"strconv"
+)
+
+// Bool reads true and false in any capitals.
+func Bool(b []byte) (v, ok bool) {
+	switch b = bytes.Trim(b, " \t"); len(b) {
+	case 4:
+		return true, is(b, "true")
+	case 5:
+		return false, is(b, "false")
+	}
+	return false, false
+}
+
+// is compares b, capitals aside, with a word of small letters.
+func is(b []byte, word string) bool {
+	for i := range b {
+		if b[i]|0x20 != word[i] {
+			return false
+		}
+	}
+	return true
+}
+
+// Int reads a whole number in decimal digits that fits 64 bits with sign.
+func Int(b []byte) (int64, bool) {
+	b = bytes.Trim(b, " \t")
+	if len(b) == 0 {
+		return 0, false
+	}
+	digits := b
+	if b[0] == '-' || b[0] == '+' {
+		digits = b[1:]
+	}
+	for len(digits) > 1 && digits[0] == '0' {
+		digits = digits[1:]
+	}
+	if len(digits) == 0 || len(digits) > 19 {
+		return 0, false
+	}
+	v := uint64(0)
+	for _, c := range digits {
+		if c < '0' || c > '9' {
+			return 0, false
+		}
+		v = 10*v + uint64(c-'0') // 19 digits fit
+	}
+	switch {
+	case b[0] == '-' && v <= 1<<63:
+		return -int64(v), true
+	case b[0] != '-' && v <= math.MaxInt64:
+		return int64(v), true
+	}
+	return 0, false
+}
+
+// Number reads a decimal number with or without point and exponent. Names of what is no finite number (nan, inf) don't
+// count, nor do numbers too large for a float64.
+func Number(b []byte) (float64, bool) {
+	b = bytes.Trim(b, " \t")
+	if len(b) == 0 {
+		return 0, false
+	}
+	for _, c := range b {
+		if (c < '0' || c > '9') && c != '.' && c != '-' && c != '+' && c != 'e' && c != 'E' {
+			return 0, false
+		}
+	}
+	v, err := strconv.ParseFloat(string(b), 64)
+	return v, err == nil
+}
+
+// Missing tells whether a cell says in words, or by being empty, that it has no value.
+func Missing(b []byte) bool {
+	switch string(bytes.Trim(b, " \t")) {
+	case "", "NA", "N/A", "n/a", "na", "#N/A", "NaN", "nan", "-nan", "null", "NULL", "Null", "None", "none", "?", "-", ".":
+		return true
+	}
+	return false
+}
