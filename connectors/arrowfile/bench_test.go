@@ -15,6 +15,7 @@ import (
 	"github.com/apache/arrow/go/v16/arrow/ipc"
 	"github.com/apache/arrow/go/v16/arrow/memory"
 
+	"labelweir/connectors/table"
 	"labelweir/filter"
 )
 
@@ -39,14 +40,16 @@ func wideFile(b *testing.B) string {
 		b.Fatal(err)
 	}
 	r := rand.New(rand.NewPCG(1, 2))
-	grades := texts(memory.DefaultAllocator, []string{"extra", "first", "juice"})
+	grades := array.NewStringBuilder(memory.DefaultAllocator)
+	grades.AppendValues([]string{"extra", "first", "juice"}, nil)
+	gradeNames := grades.NewArray()
 	for lo := 0; lo < benchRows; lo += benchBatch {
 		n := min(benchBatch, benchRows-lo)
 		codes := array.NewInt8Builder(memory.DefaultAllocator)
 		for range n {
 			codes.Append(int8(r.IntN(3)))
 		}
-		cols := []arrow.Array{indexed(codes, grades)}
+		cols := []arrow.Array{array.NewDictionaryArray(fields[0].Type, codes.NewArray(), gradeNames)}
 		for range benchCols {
 			v := array.NewFloat32Builder(memory.DefaultAllocator)
 			for range n {
@@ -75,17 +78,17 @@ func BenchmarkCopy(b *testing.B) {
 	path := wideFile(b)
 	for _, mode := range []string{"observe", "divert"} {
 		b.Run(mode, func(b *testing.B) {
-			out := OutputPaths{Tagged: filepath.Join(b.TempDir(), "out.arrow")}
+			out := table.OutputPaths{Tagged: filepath.Join(b.TempDir(), "out.arrow")}
 			r := rand.New(rand.NewPCG(3, 4))
 			if mode == "divert" {
 				out.Quarantine = filepath.Join(b.TempDir(), "held.arrow")
 			}
 			tag := filter.Tag{Score: 0.25, Margin: 1, Implied: "first", Snapshot: "0123456789ab"}
-			tags := make([]filter.Tag, DefaultOptions().Rows)
+			tags := make([]filter.Tag, table.DefaultOptions().Rows)
 			b.ReportAllocs()
 			for b.Loop() {
-				src := must(Open(path, filter.Record{Label: "grade"}, Options{}))
-				sink := must(create(lazy{}, out, src, Options{Replace: true}))
+				src := must(Open(path, filter.Record{Label: "grade"}, table.Options{}))
+				sink := must(create(lazy{}, out, src, table.Options{Replace: true}))
 				for {
 					batch, err := src.Next(context.Background())
 					if err == io.EOF {
@@ -116,7 +119,7 @@ func BenchmarkRead(b *testing.B) {
 	path := wideFile(b)
 	b.ReportAllocs()
 	for b.Loop() {
-		src := must(Open(path, filter.Record{Label: "grade"}, Options{}))
+		src := must(Open(path, filter.Record{Label: "grade"}, table.Options{}))
 		for {
 			batch, err := src.Next(context.Background())
 			if err == io.EOF {

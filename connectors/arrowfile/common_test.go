@@ -14,7 +14,8 @@ import (
 
 	"github.com/apache/arrow/go/v16/arrow/memory"
 
-	"labelweir/connectors/arrowfile/internal/disk"
+	"labelweir/connectors/internal/disk"
+	"labelweir/connectors/table"
 	"labelweir/filter"
 	"labelweir/model"
 )
@@ -42,13 +43,13 @@ func TestMain(m *testing.M) {
 }
 
 // counted gives options whose memory must have been given back when the test ends.
-func counted(t testing.TB) Options {
+func counted(t testing.TB) table.Options {
 	mem := memory.NewCheckedAllocator(memory.NewGoAllocator())
 	t.Cleanup(func() { mem.AssertSize(t, 0) })
-	return Options{mem: mem}
+	return table.Options{Memory: mem}
 }
 
-func open(t testing.TB, path string, rec filter.Record, opt Options) *Source {
+func open(t testing.TB, path string, rec filter.Record, opt table.Options) *table.Source {
 	t.Helper()
 	src, err := Open(path, rec, opt)
 	if err != nil {
@@ -58,8 +59,14 @@ func open(t testing.TB, path string, rec filter.Record, opt Options) *Source {
 	return src
 }
 
+// create is table.Create on a disk.
+func create(d disk.FS, out table.OutputPaths, src *table.Source, opt table.Options) (*table.Sink, error) {
+	opt.Disk = d
+	return table.Create(out, src, opt)
+}
+
 // each calls do for every batch of src, to its end.
-func each(t testing.TB, src *Source, do func(b *filter.Batch)) {
+func each(t testing.TB, src *table.Source, do func(b *filter.Batch)) {
 	t.Helper()
 	for {
 		b, err := src.Next(context.Background())
@@ -107,7 +114,7 @@ func nameOf(code int32, names []string) string {
 }
 
 // allRows reads a file whole.
-func allRows(t testing.TB, src *Source) (rows []string) {
+func allRows(t testing.TB, src *table.Source) (rows []string) {
 	t.Helper()
 	each(t, src, func(b *filter.Batch) { rows = append(rows, rowsOf(b)...) })
 	return rows
@@ -132,7 +139,7 @@ func tagsOf(b *filter.Batch, tag func(int64) filter.Tag) []filter.Tag {
 }
 
 // copyFile sends all of src through a sink.
-func copyFile(t testing.TB, src *Source, out OutputPaths, opt Options, tag func(int64) filter.Tag) {
+func copyFile(t testing.TB, src *table.Source, out table.OutputPaths, opt table.Options, tag func(int64) filter.Tag) {
 	t.Helper()
 	sink, err := create(lazy{}, out, src, opt)
 	if err != nil {
@@ -167,9 +174,9 @@ func (l lazy) Create(path string) (disk.File, error) {
 }
 
 // outIn gives output paths in a fresh folder.
-func outIn(t testing.TB, ext string) OutputPaths {
+func outIn(t testing.TB, ext string) table.OutputPaths {
 	dir := t.TempDir()
-	return OutputPaths{Tagged: filepath.Join(dir, "tagged"+ext), Quarantine: filepath.Join(dir, "held"+ext)}
+	return table.OutputPaths{Tagged: filepath.Join(dir, "tagged"+ext), Quarantine: filepath.Join(dir, "held"+ext)}
 }
 
 // golden compares got with a file of testdata, or writes it.

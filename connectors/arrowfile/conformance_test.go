@@ -13,6 +13,7 @@ import (
 	"github.com/apache/arrow/go/v16/arrow/array"
 	"github.com/apache/arrow/go/v16/arrow/ipc"
 
+	"labelweir/connectors/table"
 	"labelweir/filter"
 	"labelweir/filter/filtertest"
 	"labelweir/model"
@@ -31,7 +32,7 @@ func TestSinkConforms(t *testing.T) {
 	for _, name := range []string{"apples.arrow", "apples.arrows"} {
 		t.Run(name, func(t *testing.T) {
 			opt := counted(t)
-			var out OutputPaths
+			var out table.OutputPaths
 			filtertest.Sink(t, filtertest.SinkCase{
 				Open: func() (filter.Source, error) { return Open("testdata/"+name, appleRecord, opt) },
 				Create: func() (filter.Sink, error) {
@@ -41,7 +42,7 @@ func TestSinkConforms(t *testing.T) {
 						return nil, err
 					}
 					defer src.Close() // the sink needs no more than what was there to be known at once
-					return Create(out, src, opt)
+					return table.Create(out, src, opt)
 				},
 				Read: func() (tagged, held []filtertest.Tagged, there bool, err error) {
 					tagged, errA := readTags(out.Tagged)

@@ -9,6 +9,7 @@ import (
 	"path/filepath"
 	"testing"
 
+	"labelweir/connectors/table"
 	"labelweir/filter"
 )
 
@@ -20,19 +21,19 @@ func survive(t *testing.T, path string, b []byte, label string) {
 	}
 	check := func(err error) {
 		t.Helper()
-		var own *Error
+		var own *table.Error
 		if err != nil && err != io.EOF && (!errors.As(err, &own) || own.Path == "") {
 			t.Errorf("got %T %v, want an Error", err, err)
 		}
 	}
-	src, err := Open(path, filter.Record{Label: label}, Options{Rows: 7})
+	src, err := Open(path, filter.Record{Label: label}, table.Options{Rows: 7})
 	if err != nil {
 		check(err)
 		return
 	}
 	defer src.Close()
-	out := OutputPaths{path + ".tagged", path + ".held"}
-	sink, err := create(lazy{}, out, src, Options{Replace: true})
+	out := table.OutputPaths{Tagged: path + ".tagged", Quarantine: path + ".held"}
+	sink, err := create(lazy{}, out, src, table.Options{Replace: true})
 	if err != nil {
 		check(err)
 		return

@@ -8,6 +8,7 @@ import (
 	"path/filepath"
 
 	"labelweir/connectors/arrowfile"
+	"labelweir/connectors/table"
 	"labelweir/filter"
 	"labelweir/model"
 )
@@ -31,7 +32,7 @@ func Example() {
 }
 
 func tagAll(in, out string) error {
-	ctx, opt := context.Background(), arrowfile.DefaultOptions()
+	ctx, opt := context.Background(), table.DefaultOptions()
 	src, err := arrowfile.Open(in, filter.Record{Label: "grade"}, opt)
 	if err != nil {
 		return err
@@ -42,7 +43,7 @@ func tagAll(in, out string) error {
 			fmt.Printf("%s is left out: %s\n", c.Column, c.Why)
 		}
 	}
-	sink, err := arrowfile.Create(arrowfile.OutputPaths{Tagged: out}, src, opt)
+	sink, err := table.Create(table.OutputPaths{Tagged: out}, src, opt)
 	if err != nil {
 		return err
 	}

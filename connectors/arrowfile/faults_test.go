@@ -16,6 +16,7 @@ import (
 	"github.com/apache/arrow/go/v16/arrow/ipc"
 	"github.com/apache/arrow/go/v16/arrow/memory"
 
+	"labelweir/connectors/table"
 	"labelweir/filter"
 	"labelweir/model"
 )
@@ -64,7 +65,7 @@ func fromJSON(t *testing.T, dt arrow.DataType, text string) arrow.Array {
 }
 
 // readWhole opens a file and reads it to its end.
-func readWhole(path string, rec filter.Record, opt Options) error {
+func readWhole(path string, rec filter.Record, opt table.Options) error {
 	src, err := Open(path, rec, opt)
 	if err != nil {
 		return err
@@ -107,35 +108,35 @@ func TestBadInputIsExplained(t *testing.T) {
 		rec         filter.Record
 		kind        error
 	}{
-		{"missing file", filepath.Join(dir, "none.arrow"), appleRecord, ErrUnreadable},
-		{"a folder", dir, appleRecord, ErrUnreadable},
-		{"empty file", put("empty.arrow", ""), appleRecord, ErrUnreadable},
-		{"text", put("table.csv", "grade,diameter\nextra,71\n"), appleRecord, ErrUnreadable},
-		{"other bytes", put("photo.arrow", "\x89PNG\r\n\x1a\n0123456789"), appleRecord, ErrUnreadable},
-		{"cut file", put("cut.arrow", string(whole[:len(whole)-2000])), appleRecord, ErrUnreadable},
-		{"cut stream", put("cut.arrows", string(stream[:len(stream)-700])), appleRecord, ErrUnreadable},
-		{"no label named", apples, filter.Record{}, ErrColumn},
-		{"label missing, one like it", apples, filter.Record{Label: "Grades"}, ErrColumn},
-		{"label missing, none like it", apples, filter.Record{Label: "weight"}, ErrColumn},
-		{"source missing", apples, filter.Record{Label: "grade", Source: "graders"}, ErrColumn},
-		{"time missing", apples, filter.Record{Label: "grade", Time: "graded"}, ErrColumn},
-		{"field missing", apples, filter.Record{Label: "grade", Fields: number("diametre_mm")}, ErrColumn},
-		{"field named twice", apples, filter.Record{Label: "grade", Fields: append(number("blush"), number("blush")...)}, ErrColumn},
-		{"field is the label", apples, filter.Record{Label: "spots", Fields: number("spots")}, ErrColumn},
-		{"field of another kind", apples, filter.Record{Label: "grade", Fields: number("cultivar")}, ErrColumn},
-		{"vector of another size", apples, filter.Record{Label: "grade", Fields: []filter.Field{{Path: "spectrum", Kind: model.Vector, Size: 8}}}, ErrColumn},
-		{"field of an unsupported type", "testdata/types.arrow", filter.Record{Label: "label", Fields: []filter.Field{{Path: "pair"}}}, ErrColumn},
-		{"label is the source", apples, filter.Record{Label: "grade", Source: "grade"}, ErrColumn},
-		{"label of an unsupported type", "testdata/types.arrow", filter.Record{Label: "list"}, ErrColumn},
-		{"source of an unsupported type", "testdata/types.arrow", filter.Record{Label: "label", Source: "pair"}, ErrColumn},
-		{"label column named twice", "testdata/twice.arrow", filter.Record{Label: "grade"}, ErrColumn},
-		{"time of integers", apples, filter.Record{Label: "grade", Time: "apple_id"}, ErrColumn},
-		{"time of text", "testdata/types.arrow", filter.Record{Label: "label", Time: "text"}, ErrColumn},
-		{"fractional label", oneColumn(t, dir, "measured.arrow", arrow.PrimitiveTypes.Float32, "[1, 2, null, 2.5, 1]"), filter.Record{Label: "label"}, ErrUnreadable},
-		{"no columns left", oneColumn(t, dir, "bare.arrow", arrow.BinaryTypes.String, `["a","b"]`), filter.Record{Label: "x", Source: "label"}, ErrColumn},
+		{"missing file", filepath.Join(dir, "none.arrow"), appleRecord, table.ErrUnreadable},
+		{"a folder", dir, appleRecord, table.ErrUnreadable},
+		{"empty file", put("empty.arrow", ""), appleRecord, table.ErrUnreadable},
+		{"text", put("table.csv", "grade,diameter\nextra,71\n"), appleRecord, table.ErrUnreadable},
+		{"other bytes", put("photo.arrow", "\x89PNG\r\n\x1a\n0123456789"), appleRecord, table.ErrUnreadable},
+		{"cut file", put("cut.arrow", string(whole[:len(whole)-2000])), appleRecord, table.ErrUnreadable},
+		{"cut stream", put("cut.arrows", string(stream[:len(stream)-700])), appleRecord, table.ErrUnreadable},
+		{"no label named", apples, filter.Record{}, table.ErrColumn},
+		{"label missing, one like it", apples, filter.Record{Label: "Grades"}, table.ErrColumn},
+		{"label missing, none like it", apples, filter.Record{Label: "weight"}, table.ErrColumn},
+		{"source missing", apples, filter.Record{Label: "grade", Source: "graders"}, table.ErrColumn},
+		{"time missing", apples, filter.Record{Label: "grade", Time: "graded"}, table.ErrColumn},
+		{"field missing", apples, filter.Record{Label: "grade", Fields: number("diametre_mm")}, table.ErrColumn},
+		{"field named twice", apples, filter.Record{Label: "grade", Fields: append(number("blush"), number("blush")...)}, table.ErrColumn},
+		{"field is the label", apples, filter.Record{Label: "spots", Fields: number("spots")}, table.ErrColumn},
+		{"field of another kind", apples, filter.Record{Label: "grade", Fields: number("cultivar")}, table.ErrColumn},
+		{"vector of another size", apples, filter.Record{Label: "grade", Fields: []filter.Field{{Path: "spectrum", Kind: model.Vector, Size: 8}}}, table.ErrColumn},
+		{"field of an unsupported type", "testdata/types.arrow", filter.Record{Label: "label", Fields: []filter.Field{{Path: "pair"}}}, table.ErrColumn},
+		{"label is the source", apples, filter.Record{Label: "grade", Source: "grade"}, table.ErrColumn},
+		{"label of an unsupported type", "testdata/types.arrow", filter.Record{Label: "list"}, table.ErrColumn},
+		{"source of an unsupported type", "testdata/types.arrow", filter.Record{Label: "label", Source: "pair"}, table.ErrColumn},
+		{"label column named twice", "testdata/twice.arrow", filter.Record{Label: "grade"}, table.ErrColumn},
+		{"time of integers", apples, filter.Record{Label: "grade", Time: "apple_id"}, table.ErrColumn},
+		{"time of text", "testdata/types.arrow", filter.Record{Label: "label", Time: "text"}, table.ErrColumn},
+		{"fractional label", oneColumn(t, dir, "measured.arrow", arrow.PrimitiveTypes.Float32, "[1, 2, null, 2.5, 1]"), filter.Record{Label: "label"}, table.ErrUnreadable},
+		{"no columns left", oneColumn(t, dir, "bare.arrow", arrow.BinaryTypes.String, `["a","b"]`), filter.Record{Label: "x", Source: "label"}, table.ErrColumn},
 	} {
 		err := readWhole(x.path, x.rec, counted(t))
-		var own *Error
+		var own *table.Error
 		if !errors.As(err, &own) || !errors.Is(err, x.kind) || own.Do == "" {
 			t.Errorf("%s: got %v, want an Error of kind %q with advice", x.about, err, x.kind)
 			continue
@@ -143,7 +144,7 @@ func TestBadInputIsExplained(t *testing.T) {
 		fmt.Fprintf(&b, "%s\n    %s\n", x.about, strings.ReplaceAll(err.Error(), dir, "DIR"))
 	}
 	golden(t, "faults.txt", b.String())
-	if err := readWhole(filepath.Join(dir, "none.arrow"), appleRecord, Options{}); !errors.Is(err, fs.ErrNotExist) {
+	if err := readWhole(filepath.Join(dir, "none.arrow"), appleRecord, table.Options{}); !errors.Is(err, fs.ErrNotExist) {
 		t.Errorf("a missing file gives %v, which is not fs.ErrNotExist", err)
 	}
 }

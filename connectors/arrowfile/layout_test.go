@@ -15,6 +15,7 @@ import (
 	"github.com/apache/arrow/go/v16/arrow/memory"
 	"pgregory.net/rapid"
 
+	"labelweir/connectors/table"
 	"labelweir/filter"
 )
 
@@ -142,7 +143,7 @@ func TestBatchesDoNotDependOnTheLayout(t *testing.T) {
 		read := func(format Format, plain bool, cuts []int) []string {
 			path := filepath.Join(dir, "crates.arrow")
 			writeCrates(t, path, format, plain, rows, cuts)
-			src, err := Open(path, rec, Options{Rows: rapid.IntRange(1, 50).Draw(rt, "batch")})
+			src, err := Open(path, rec, table.Options{Rows: rapid.IntRange(1, 50).Draw(rt, "batch")})
 			if err != nil {
 				rt.Fatal(err)
 			}
@@ -169,7 +170,7 @@ func TestOutputBytesDoNotDependOnTheLayout(t *testing.T) {
 		n := rapid.IntRange(0, 120).Draw(rt, "rows")
 		rows := crates(n, rapid.Uint64().Draw(rt, "seed"))
 		format := rapid.SampledFrom([]Format{File, Stream}).Draw(rt, "format")
-		limits := Options{blockRows: rapid.Int64Range(1, 150).Draw(rt, "block rows"), blockBytes: rapid.Int64Range(40, 4000).Draw(rt, "block bytes")}
+		limits := table.Options{BlockRows: rapid.Int64Range(1, 150).Draw(rt, "block rows"), BlockBytes: rapid.Int64Range(40, 4000).Draw(rt, "block bytes")}
 		var want [2][]byte
 		for k := range 2 {
 			var cuts []int
@@ -178,7 +179,7 @@ func TestOutputBytesDoNotDependOnTheLayout(t *testing.T) {
 				cuts, opt.Rows = sortedCuts(rt, n), rapid.IntRange(1, 50).Draw(rt, "batch")
 			}
 			opt.Replace = true
-			in, out := filepath.Join(dir, "in"), OutputPaths{filepath.Join(dir, "tagged"), filepath.Join(dir, "held")}
+			in, out := filepath.Join(dir, "in"), table.OutputPaths{Tagged: filepath.Join(dir, "tagged"), Quarantine: filepath.Join(dir, "held")}
 			writeCrates(t, in, format, true, rows, cuts)
 			src, err := Open(in, rec, opt)
 			if err != nil {
@@ -208,14 +209,14 @@ func TestRecordBatchesWrittenAreBounded(t *testing.T) {
 	}
 	writeCrates(t, in, File, true, rows, nil)
 	opt := counted(t)
-	opt.blockRows, opt.blockBytes = 7, 1<<20
+	opt.BlockRows, opt.BlockBytes = 7, 1<<20
 	var cut []string
 	for range 2 {
 		copyFile(t, open(t, in, filter.Record{Label: "grade"}, opt), out, opt, func(int64) filter.Tag { return filter.Tag{} })
 		again, sizes := counted(t), []int{}
 		each(t, open(t, out.Tagged, filter.Record{Label: "grade"}, again), func(b *filter.Batch) { sizes = append(sizes, b.Rows()) })
 		cut = append(cut, fmt.Sprint(sizes))
-		opt.blockRows, opt.blockBytes, opt.Replace = 1000, 5*1060, true
+		opt.BlockRows, opt.BlockBytes, opt.Replace = 1000, 5*1060, true
 	}
 	if cut[0] != "[7 7 7 7 7 7 7 1]" || cut[1] != "[5 5 5 5 5 5 5 5 5 5]" {
 		t.Errorf("got batches of %s and %s rows", cut[0], cut[1])

@@ -7,6 +7,7 @@ import (
 
 	"github.com/apache/arrow/go/v16/arrow/memory"
 
+	"labelweir/connectors/table"
 	"labelweir/filter"
 )
 
@@ -48,7 +49,7 @@ func TestMemoryDoesNotGrowWithTheInput(t *testing.T) {
 			}
 			writeCrates(t, in, x.format, true, crates(n, 1), cuts)
 			mem := &peaks{Allocator: memory.NewGoAllocator()}
-			opt := Options{mem: mem, blockRows: 100, blockBytes: 1 << 20}
+			opt := table.Options{Memory: mem, BlockRows: 100, BlockBytes: 1 << 20}
 			copyFile(t, open(t, in, filter.Record{Label: "grade"}, opt), outIn(t, ""), opt, x.tag)
 			if most[k] = mem.most; most[k] == 0 {
 				t.Fatal("nothing was counted")

@@ -9,6 +9,8 @@ import (
 
 	"github.com/apache/arrow/go/v16/arrow/ipc"
 	"github.com/apache/arrow/go/v16/arrow/memory"
+
+	"labelweir/connectors/table"
 )
 
 // Format is one of the two layouts of Arrow IPC.
@@ -63,7 +65,7 @@ var errNotArrow = errors.New("not Arrow IPC")
 func newMessages(r io.ReaderAt, size int64) (m *messages, err error) {
 	defer func() {
 		if p := recover(); p != nil {
-			err = caught(p)
+			err = table.Caught(p)
 		}
 	}()
 	m = &messages{r: r, size: size}

@@ -10,9 +10,9 @@ import (
 	"syscall"
 	"testing"
 
-	"labelweir/connectors/arrowfile/internal/disk"
+	"labelweir/connectors/internal/disk"
+	"labelweir/connectors/table"
 	"labelweir/filter"
-	"labelweir/model"
 )
 
 // files lists what stands in a folder, hidden files too.
@@ -30,7 +30,7 @@ func files(t *testing.T, dir string) string {
 }
 
 // carry sends apples.arrow through a sink on d, the way a command does.
-func carry(d disk.FS, out OutputPaths, opt Options) (err error) {
+func carry(d disk.FS, out table.OutputPaths, opt table.Options) (err error) {
 	src, err := Open("testdata/apples.arrow", appleRecord, opt)
 	if err != nil {
 		return err
@@ -64,9 +64,9 @@ func TestNoHalfFileStandsUnderATargetsName(t *testing.T) {
 		calls := map[string]bool{}
 		for n := 0; ; n++ {
 			dir := t.TempDir()
-			out := OutputPaths{filepath.Join(dir, "tagged.arrow"), filepath.Join(dir, "held.arrow")}
+			out := table.OutputPaths{Tagged: filepath.Join(dir, "tagged.arrow"), Quarantine: filepath.Join(dir, "held.arrow")}
 			opt := counted(t)
-			opt.blockRows, opt.blockBytes = 30, 1<<20
+			opt.BlockRows, opt.BlockBytes = 30, 1<<20
 			d := &disk.Failing{FS: lazy{}, Err: failure.err, At: n, Stays: failure.stays}
 			err := carry(d, out, opt)
 			call, path, fired := d.Fired()
@@ -87,7 +87,7 @@ func TestNoHalfFileStandsUnderATargetsName(t *testing.T) {
 			if !strings.Contains(err.Error(), failure.text) || !strings.Contains(err.Error(), dir) {
 				t.Errorf("call %d, %s of %s fails: got %q, want the path and %q", n, call, path, err, failure.text)
 			}
-			if !errors.Is(err, ErrWrite) && !errors.Is(err, ErrTarget) {
+			if !errors.Is(err, table.ErrWrite) && !errors.Is(err, table.ErrTarget) {
 				t.Errorf("call %d, %s of %s fails: %v is of no kind", n, call, path, err)
 			}
 			if left := files(t, dir); left != "" && call != "remove" {
@@ -106,7 +106,7 @@ func TestFailedReplacementLeavesAWholeFile(t *testing.T) {
 	before := []byte("what stood here before")
 	for n := 0; ; n++ {
 		dir := t.TempDir()
-		out := OutputPaths{filepath.Join(dir, "tagged.arrow"), filepath.Join(dir, "held.arrow")}
+		out := table.OutputPaths{Tagged: filepath.Join(dir, "tagged.arrow"), Quarantine: filepath.Join(dir, "held.arrow")}
 		if err := errors.Join(os.WriteFile(out.Tagged, before, 0o644), os.WriteFile(out.Quarantine, before, 0o644)); err != nil {
 			t.Fatal(err)
 		}
@@ -140,7 +140,7 @@ func TestCloseWithoutCommitLeavesNothing(t *testing.T) {
 	dir := t.TempDir()
 	opt := counted(t)
 	src := open(t, "testdata/apples.arrow", appleRecord, opt)
-	sink, err := Create(OutputPaths{filepath.Join(dir, "a"), filepath.Join(dir, "b")}, src, opt)
+	sink, err := table.Create(table.OutputPaths{Tagged: filepath.Join(dir, "a"), Quarantine: filepath.Join(dir, "b")}, src, opt)
 	if err != nil {
 		t.Fatal(err)
 	}
@@ -161,7 +161,7 @@ func TestCloseWithoutCommitLeavesNothing(t *testing.T) {
 	if got := files(t, dir); got != "" {
 		t.Errorf("got files %s", got)
 	}
-	if err := sink.Commit(context.Background()); !errors.Is(err, ErrClosed) {
+	if err := sink.Commit(context.Background()); !errors.Is(err, table.ErrClosed) {
 		t.Errorf("commit after close gives %v", err)
 	}
 }
@@ -169,7 +169,7 @@ func TestCloseWithoutCommitLeavesNothing(t *testing.T) {
 func TestRowsAddUp(t *testing.T) {
 	opt := counted(t)
 	src := open(t, "testdata/apples.arrow", appleRecord, opt)
-	sink, err := Create(outIn(t, ".arrow"), src, opt)
+	sink, err := table.Create(outIn(t, ".arrow"), src, opt)
 	if err != nil {
 		t.Fatal(err)
 	}
@@ -212,29 +212,29 @@ func TestBadOutputIsExplained(t *testing.T) {
 	var b strings.Builder
 	for _, x := range []struct {
 		about string
-		out   OutputPaths
-		opt   Options
+		out   table.OutputPaths
+		opt   table.Options
 	}{
-		{"no output", OutputPaths{}, Options{}},
-		{"target exists", OutputPaths{path("old.arrow"), path("q")}, Options{}},
-		{"quarantine exists", OutputPaths{path("new"), path("old.arrow")}, Options{}},
-		{"target is the input", OutputPaths{input, ""}, Options{Replace: true}},
-		{"target is a link to the input", OutputPaths{path("link.arrow"), ""}, Options{Replace: true}},
-		{"quarantine is the input", OutputPaths{path("new"), input}, Options{Replace: true}},
-		{"both are one", OutputPaths{path("new"), path("here/new")}, Options{}},
-		{"folder missing", OutputPaths{path("no/such/new"), ""}, Options{}},
-		{"folder is a file", OutputPaths{path("old.arrow/new"), ""}, Options{}},
-		{"target is a folder", OutputPaths{dir, ""}, Options{Replace: true}},
-		{"target is a device", OutputPaths{"/dev/null", ""}, Options{Replace: true}},
+		{"no output", table.OutputPaths{}, table.Options{}},
+		{"target exists", table.OutputPaths{Tagged: path("old.arrow"), Quarantine: path("q")}, table.Options{}},
+		{"quarantine exists", table.OutputPaths{Tagged: path("new"), Quarantine: path("old.arrow")}, table.Options{}},
+		{"target is the input", table.OutputPaths{Tagged: input, Quarantine: ""}, table.Options{Replace: true}},
+		{"target is a link to the input", table.OutputPaths{Tagged: path("link.arrow"), Quarantine: ""}, table.Options{Replace: true}},
+		{"quarantine is the input", table.OutputPaths{Tagged: path("new"), Quarantine: input}, table.Options{Replace: true}},
+		{"both are one", table.OutputPaths{Tagged: path("new"), Quarantine: path("here/new")}, table.Options{}},
+		{"folder missing", table.OutputPaths{Tagged: path("no/such/new"), Quarantine: ""}, table.Options{}},
+		{"folder is a file", table.OutputPaths{Tagged: path("old.arrow/new"), Quarantine: ""}, table.Options{}},
+		{"target is a folder", table.OutputPaths{Tagged: dir, Quarantine: ""}, table.Options{Replace: true}},
+		{"target is a device", table.OutputPaths{Tagged: "/dev/null", Quarantine: ""}, table.Options{Replace: true}},
 	} {
 		before := files(t, dir)
-		sink, err := Create(x.out, src, x.opt)
+		sink, err := table.Create(x.out, src, x.opt)
 		if err == nil {
 			sink.Close()
 		}
-		var own *Error
-		if !errors.As(err, &own) || !errors.Is(err, ErrTarget) || own.Do == "" {
-			t.Errorf("%s: got %v, want an Error with advice that wraps ErrTarget", x.about, err)
+		var own *table.Error
+		if !errors.As(err, &own) || !errors.Is(err, table.ErrTarget) || own.Do == "" {
+			t.Errorf("%s: got %v, want an Error with advice that wraps table.ErrTarget", x.about, err)
 			continue
 		}
 		if after := files(t, dir); after != before {
@@ -245,27 +245,27 @@ func TestBadOutputIsExplained(t *testing.T) {
 	fmt.Fprintf(&b, "tagged already\n    %s\n", strings.ReplaceAll(taggedTwice(t, dir), dir, "DIR"))
 	fmt.Fprintf(&b, "held back without a quarantine\n    %s\n", strings.ReplaceAll(heldNowhere(t, dir, src), dir, "DIR"))
 	d := &disk.Failing{FS: disk.OS{}, Err: &os.PathError{Op: "open", Path: "x", Err: syscall.EACCES}, Call: "create"}
-	_, err = create(d, OutputPaths{Tagged: path("new")}, src, Options{})
+	_, err = create(d, table.OutputPaths{Tagged: path("new")}, src, table.Options{})
 	fmt.Fprintf(&b, "folder not writable\n    %s\n", strings.ReplaceAll(fmt.Sprint(err), dir, "DIR"))
-	err = carry(&disk.Failing{FS: lazy{}, Err: syscall.ENOSPC, Call: "write", Stays: true}, OutputPaths{path("new"), path("q")}, Options{blockRows: 5, blockBytes: 1 << 20})
+	err = carry(&disk.Failing{FS: lazy{}, Err: syscall.ENOSPC, Call: "write", Stays: true}, table.OutputPaths{Tagged: path("new"), Quarantine: path("q")}, table.Options{BlockRows: 5, BlockBytes: 1 << 20})
 	fmt.Fprintf(&b, "disk full\n    %s\n", strings.ReplaceAll(fmt.Sprint(err), dir, "DIR"))
 	golden(t, "output_faults.txt", b.String())
 }
 
 // taggedTwice is the message for an input that has been tagged before.
 func taggedTwice(t *testing.T, dir string) string {
-	out := OutputPaths{Tagged: filepath.Join(dir, "once.arrow"), Quarantine: filepath.Join(dir, "once_held.arrow")}
+	out := table.OutputPaths{Tagged: filepath.Join(dir, "once.arrow"), Quarantine: filepath.Join(dir, "once_held.arrow")}
 	copyFile(t, open(t, "testdata/apples.arrow", appleRecord, counted(t)), out, counted(t), tagOf)
-	_, err := Create(OutputPaths{Tagged: filepath.Join(dir, "twice.arrow")}, open(t, out.Tagged, appleRecord, counted(t)), Options{})
-	if !errors.Is(err, ErrColumn) {
-		t.Errorf("got %v, want ErrColumn", err)
+	_, err := table.Create(table.OutputPaths{Tagged: filepath.Join(dir, "twice.arrow")}, open(t, out.Tagged, appleRecord, counted(t)), table.Options{})
+	if !errors.Is(err, table.ErrColumn) {
+		t.Errorf("got %v, want table.ErrColumn", err)
 	}
 	return fmt.Sprint(err)
 }
 
 // heldNowhere is the message for a record to be held back when there is no quarantine.
-func heldNowhere(t *testing.T, dir string, src *Source) string {
-	sink, err := Create(OutputPaths{Tagged: filepath.Join(dir, "new")}, src, counted(t))
+func heldNowhere(t *testing.T, dir string, src *table.Source) string {
+	sink, err := table.Create(table.OutputPaths{Tagged: filepath.Join(dir, "new")}, src, counted(t))
 	if err != nil {
 		t.Fatal(err)
 	}
@@ -276,18 +276,8 @@ func heldNowhere(t *testing.T, dir string, src *Source) string {
 	}
 	defer b.Release()
 	err = sink.Deliver(context.Background(), b, tagsOf(b, tagOf))
-	if !errors.Is(err, ErrTarget) || !errors.Is(sink.Commit(context.Background()), ErrTarget) {
-		t.Errorf("got %v, want ErrTarget, also from Commit", err)
+	if !errors.Is(err, table.ErrTarget) || !errors.Is(sink.Commit(context.Background()), table.ErrTarget) {
+		t.Errorf("got %v, want table.ErrTarget, also from Commit", err)
 	}
 	return fmt.Sprint(err)
-}
-
-// A reason added to the model needs a place in the dictionary of reasons.
-func TestEveryReasonHasAPlace(t *testing.T) {
-	defer func() {
-		if recover() == nil {
-			t.Error("the model has a reason that newTagColumns leaves out")
-		}
-	}()
-	_ = (model.InputsChanged + 1).String()
 }

@@ -8,6 +8,7 @@ import (
 	"strings"
 	"testing"
 
+	"labelweir/connectors/table"
 	"labelweir/filter"
 	"labelweir/model"
 )
@@ -142,7 +143,7 @@ func TestBatchesOutliveTheSource(t *testing.T) {
 	}
 	b.Release()
 	b.Release() // harmless
-	if _, err := src.Next(context.Background()); !errors.Is(err, ErrClosed) {
+	if _, err := src.Next(context.Background()); !errors.Is(err, table.ErrClosed) {
 		t.Errorf("got %v from a closed source", err)
 	}
 }

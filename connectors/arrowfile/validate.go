@@ -7,15 +7,17 @@ import (
 	"github.com/apache/arrow/go/v16/arrow"
 	"github.com/apache/arrow/go/v16/arrow/array"
 	"github.com/apache/arrow/go/v16/arrow/bitutil"
+
+	"labelweir/connectors/table"
 )
 
 // validate looks at every column of a record batch for what arrow's reader takes on trust: bitmaps and offsets that
 // fit their buffers, indices that fit their dictionary. Cost O(rows) for text, lists and dictionaries, O(1) otherwise.
-func (in *input) validate(rec arrow.Record) error {
-	in.lastDicts, in.dicts = in.dicts, map[arrow.ArrayData]bool{}
+func (r *reader) validate(rec arrow.Record) error {
+	r.lastDicts, r.dicts = r.dicts, map[arrow.ArrayData]bool{}
 	for i, col := range rec.Columns() {
-		if err := in.validateData(col.Data()); err != nil {
-			e := in.damaged("its values can't be read", err).(*Error)
+		if err := r.validateData(col.Data()); err != nil {
+			e := r.damaged("its values can't be read", err).(*table.Error)
 			e.Column = rec.ColumnName(i)
 			return e
 		}
@@ -23,7 +25,7 @@ func (in *input) validate(rec arrow.Record) error {
 	return nil
 }
 
-func (in *input) validateData(d arrow.ArrayData) error {
+func (r *reader) validateData(d arrow.ArrayData) error {
 	n := d.Len()
 	if n < 0 || n > 1<<40 || d.NullN() > n {
 		return fmt.Errorf("%d nulls in %d rows", d.NullN(), n)
@@ -36,21 +38,21 @@ func (in *input) validateData(d arrow.ArrayData) error {
 	if ext, ok := dt.(arrow.ExtensionType); ok {
 		dt = ext.StorageType()
 	}
-	if err := in.validateType(dt, d); err != nil {
+	if err := r.validateType(dt, d); err != nil {
 		return err
 	}
 	for _, c := range d.Children() {
-		if err := in.validateData(c); err != nil {
+		if err := r.validateData(c); err != nil {
 			return err
 		}
 	}
 	return nil
 }
 
-func (in *input) validateType(dt arrow.DataType, d arrow.ArrayData) error {
+func (r *reader) validateType(dt arrow.DataType, d arrow.ArrayData) error {
 	switch dt := dt.(type) {
 	case *arrow.DictionaryType:
-		return in.validateDictionary(dt, d)
+		return r.validateDictionary(dt, d)
 	case *arrow.BooleanType:
 		return wide(d, 1)
 	case *arrow.StringType, *arrow.BinaryType:
@@ -143,17 +145,17 @@ func viewsFit(d arrow.ArrayData) error {
 }
 
 // validateDictionary checks the indices of valid rows, and the dictionary itself the first time it is met.
-func (in *input) validateDictionary(dt *arrow.DictionaryType, d arrow.ArrayData) error {
+func (r *reader) validateDictionary(dt *arrow.DictionaryType, d arrow.ArrayData) error {
 	dict := d.Dictionary()
 	if dict == nil {
 		return errors.New("dictionary column without a dictionary")
 	}
-	if !in.dicts[dict] && !in.lastDicts[dict] {
-		if err := in.validateData(dict); err != nil {
+	if !r.dicts[dict] && !r.lastDicts[dict] {
+		if err := r.validateData(dict); err != nil {
 			return fmt.Errorf("dictionary: %w", err)
 		}
 	}
-	in.dicts[dict] = true
+	r.dicts[dict] = true
 	index := dt.IndexType.(arrow.FixedWidthDataType)
 	if err := wide(d, index.BitWidth()); err != nil || d.Len() == 0 {
 		return err
@@ -225,19 +227,34 @@ func runsFit(d arrow.ArrayData) error {
 	}
 	arr := array.MakeFromData(ends)
 	defer arr.Release()
-	list, err := appendNumbers(nil, arr)
-	if err != nil {
-		return err
+	var list []int64
+	switch a := arr.(type) {
+	case *array.Int16:
+		list = widened(a.Int16Values())
+	case *array.Int32:
+		list = widened(a.Int32Values())
+	case *array.Int64:
+		list = a.Int64Values()
+	default:
+		return fmt.Errorf("run ends of type %s", arr.DataType())
 	}
-	last := 0.
+	last := int64(0)
 	for _, e := range list {
-		if !(e > last) {
+		if e <= last {
 			return fmt.Errorf("run end %v after %v", e, last)
 		}
 		last = e
 	}
-	if last < float64(d.Offset()+d.Len()) {
+	if last < int64(d.Offset()+d.Len()) {
 		return fmt.Errorf("runs end at %v of %d rows", last, d.Offset()+d.Len())
 	}
 	return nil
+}
+
+func widened[T int16 | int32](src []T) []int64 {
+	out := make([]int64, len(src))
+	for i, v := range src {
+		out[i] = int64(v)
+	}
+	return out
 }

@@ -30,7 +30,7 @@ func parseFields(s string) ([]filter.Field, error) {
 		if at := strings.LastIndexByte(f.Path, ':'); at >= 0 {
 			word := f.Path[at+1:]
 			kind, err := parseKind(word)
-			if near := Nearest(word, kinds()); err != nil && near != "" {
+			if near := filter.Nearest(word, kinds()); err != nil && near != "" {
 				return nil, fmt.Errorf("%q is not a kind of field; did you mean %s?", word, near)
 			}
 			if err == nil { // else the colon belongs to the name

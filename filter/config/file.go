@@ -188,7 +188,7 @@ func meantBy(path string) string {
 			elsewhere = s.Path
 		}
 	}
-	if near := Nearest(word, siblings); near != "" {
+	if near := filter.Nearest(word, siblings); near != "" {
 		return section + near
 	}
 	return elsewhere
@@ -281,7 +281,7 @@ func (d decoder) field(item ast.Node) (f filter.Field) {
 			err = errors.New("stands twice in one field; keep one")
 		case key != "path" && key != "kind" && key != "size":
 			err = errors.New("unknown key; a field has path, kind and size")
-			if near := Nearest(key, []string{"path", "kind", "size"}); near != "" {
+			if near := filter.Nearest(key, []string{"path", "kind", "size"}); near != "" {
 				err = fmt.Errorf("unknown key; did you mean %s?", near)
 			}
 		case !single || empty(v.Value):

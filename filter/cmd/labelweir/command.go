@@ -6,8 +6,8 @@ import (
 	"io"
 	"strings"
 
+	"labelweir/filter"
 	"labelweir/filter/cmd/labelweir/internal/argv"
-	"labelweir/filter/config"
 )
 
 // command is one of the program's commands.
@@ -79,7 +79,7 @@ func findCommand(name string) (*command, error) {
 		}
 		names = append(names, c.name)
 	}
-	if near := config.Nearest(name, names); near != "" {
+	if near := filter.Nearest(name, names); near != "" {
 		return nil, usagef("%s: unknown command; did you mean %s?", name, near)
 	}
 	return nil, usagef("%s: unknown command; labelweir help lists them", name)

@@ -8,7 +8,7 @@ import (
 	"strings"
 	"syscall"
 
-	"labelweir/connectors/arrowfile"
+	"labelweir/connectors/table"
 	"labelweir/filter"
 	"labelweir/filter/cmd/labelweir/internal/argv"
 	"labelweir/filter/config"
@@ -73,11 +73,11 @@ func code(ctx context.Context, err error) int {
 		return exitUsage
 	case errors.As(err, &faults):
 		return faultCode(faults)
-	case errors.Is(err, arrowfile.ErrUnreadable), errors.Is(err, arrowfile.ErrColumn), errors.Is(err, filter.ErrChanged):
+	case errors.Is(err, table.ErrUnreadable), errors.Is(err, table.ErrColumn), errors.Is(err, filter.ErrChanged):
 		return exitInput
-	case errors.Is(err, arrowfile.ErrTarget):
+	case errors.Is(err, table.ErrTarget):
 		return exitCreate
-	case errors.Is(err, arrowfile.ErrWrite):
+	case errors.Is(err, table.ErrWrite):
 		return exitWrite
 	case errors.Is(err, filter.ErrConfig), errors.Is(err, filter.ErrNoTime):
 		return exitConfig

@@ -8,7 +8,7 @@ import (
 	"syscall"
 	"testing"
 
-	"labelweir/connectors/arrowfile"
+	"labelweir/connectors/table"
 	"labelweir/filter"
 	"labelweir/filter/cmd/labelweir/internal/argv"
 	"labelweir/filter/config"
@@ -26,11 +26,11 @@ func TestErrorsHaveTheirExitCodes(t *testing.T) {
 		{config.Faults{{Layer: config.FromFlag}}, 64},
 		{config.Faults{{Layer: config.FromFlag}, {Layer: config.FromFile}}, 78},
 		{config.Faults{{Layer: config.FromEnvironment}}, 78},
-		{&arrowfile.Error{Kind: arrowfile.ErrUnreadable}, 65},
-		{&arrowfile.Error{Kind: arrowfile.ErrColumn}, 65},
+		{&table.Error{Kind: table.ErrUnreadable}, 65},
+		{&table.Error{Kind: table.ErrColumn}, 65},
 		{fmt.Errorf("while: %w", &filter.ChangedError{}), 65},
-		{&arrowfile.Error{Kind: arrowfile.ErrTarget}, 73},
-		{&arrowfile.Error{Kind: arrowfile.ErrWrite, Err: syscall.ENOSPC}, 74},
+		{&table.Error{Kind: table.ErrTarget}, 73},
+		{&table.Error{Kind: table.ErrWrite, Err: syscall.ENOSPC}, 74},
 		{fmt.Errorf("%w: window.records", filter.ErrConfig), 78},
 		{&failure{exitGate, errors.New("too many")}, 3},
 		{context.Canceled, 1}, // not by a signal

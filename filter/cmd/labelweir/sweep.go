@@ -8,7 +8,7 @@ import (
 	"strings"
 	"time"
 
-	"labelweir/connectors/arrowfile"
+	"labelweir/connectors/table"
 	"labelweir/filter"
 	"labelweir/filter/cmd/labelweir/internal/argv"
 	"labelweir/filter/cmd/labelweir/internal/sweep"
@@ -63,7 +63,7 @@ func runSweep(ctx context.Context, p *process, args []string) error {
 		bar = term.NewBar(p.err, time.Now)
 	}
 	report, err := sweep.Run(ctx, c, sweep.Watch{
-		Chosen:   func(choice []arrowfile.Choice) { tellChoice(p, choice) },
+		Chosen:   func(choice []table.Choice) { tellChoice(p, choice) },
 		Progress: bar.Show,
 	})
 	bar.Clear()
@@ -109,7 +109,7 @@ func plain(err error) error {
 }
 
 // tellChoice says which columns are learned from, and why others are not.
-func tellChoice(p *process, choice []arrowfile.Choice) {
+func tellChoice(p *process, choice []table.Choice) {
 	var features []string
 	for _, c := range choice {
 		if c.Used {

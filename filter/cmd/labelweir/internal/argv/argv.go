@@ -5,7 +5,7 @@ import (
 	"fmt"
 	"strings"
 
-	"labelweir/filter/config"
+	"labelweir/filter"
 )
 
 // Flag is one flag of a command.
@@ -91,7 +91,7 @@ func unknown(flags []Flag, written string) error {
 	for i := range flags {
 		names[i] = flags[i].Name
 	}
-	if near := config.Nearest(strings.TrimLeft(written, "-"), names); near != "" {
+	if near := filter.Nearest(strings.TrimLeft(written, "-"), names); near != "" {
 		return &Error{written, "unknown flag; did you mean --" + near + "?"}
 	}
 	return &Error{written, "unknown flag; see labelweir help"}

@@ -7,6 +7,7 @@ import (
 	"testing"
 
 	"labelweir/connectors/arrowfile"
+	"labelweir/connectors/table"
 	"labelweir/filter"
 	"labelweir/model"
 )
@@ -67,13 +68,13 @@ func deliver(t *testing.T, h *Harvest, tag func(i int64) filter.Tag) (tagged, he
 	if err := h.WriteLine(line); err != nil {
 		t.Fatal(err)
 	}
-	out := arrowfile.OutputPaths{Tagged: filepath.Join(dir, "passed.arrow"), Quarantine: filepath.Join(dir, "held.arrow")}
-	source, err := arrowfile.Open(line, filter.Record{Label: "grade", Source: "grader", Time: "graded_at"}, arrowfile.DefaultOptions())
+	out := table.OutputPaths{Tagged: filepath.Join(dir, "passed.arrow"), Quarantine: filepath.Join(dir, "held.arrow")}
+	source, err := arrowfile.Open(line, filter.Record{Label: "grade", Source: "grader", Time: "graded_at"}, table.DefaultOptions())
 	if err != nil {
 		t.Fatal(err)
 	}
 	defer source.Close()
-	sink, err := arrowfile.Create(out, source, arrowfile.DefaultOptions())
+	sink, err := table.Create(out, source, table.DefaultOptions())
 	if err != nil {
 		t.Fatal(err)
 	}

@@ -10,7 +10,7 @@ import (
 	"path/filepath"
 	"strconv"
 
-	"labelweir/connectors/arrowfile"
+	"labelweir/connectors/table"
 	"labelweir/filter"
 	"labelweir/filter/cmd/labelweir/internal/sweep"
 	"labelweir/filter/config"
@@ -69,14 +69,14 @@ func folder(wanted string) (dir string, done func(), err error) {
 	if wanted == "" {
 		dir, err := os.MkdirTemp("", "labelweir-demo-")
 		if err != nil {
-			return "", nil, &arrowfile.Error{Path: os.TempDir(), What: "no temporary folder can be made in it",
-				Do: "set TMPDIR, or give --out DIR", Kind: arrowfile.ErrTarget, Err: bare(err)}
+			return "", nil, &table.Error{Path: os.TempDir(), What: "no temporary folder can be made in it",
+				Do: "set TMPDIR, or give --out DIR", Kind: table.ErrTarget, Err: bare(err)}
 		}
 		return dir, func() { os.RemoveAll(dir) }, nil
 	}
 	if err := os.MkdirAll(wanted, 0o777); err != nil {
-		return "", nil, &arrowfile.Error{Path: wanted, What: "the folder can't be made", Do: "name another one",
-			Kind: arrowfile.ErrTarget, Err: bare(err)}
+		return "", nil, &table.Error{Path: wanted, What: "the folder can't be made", Do: "name another one",
+			Kind: table.ErrTarget, Err: bare(err)}
 	}
 	return wanted, func() {}, nil
 }
@@ -91,10 +91,10 @@ func (h *Harvest) write(dir string) error {
 		err := file.write(path)
 		switch {
 		case errors.Is(err, fs.ErrExist):
-			return &arrowfile.Error{Path: path, What: "is there from an earlier demo", Do: "name another folder", Kind: arrowfile.ErrTarget}
+			return &table.Error{Path: path, What: "is there from an earlier demo", Do: "name another folder", Kind: table.ErrTarget}
 		case err != nil:
-			return &arrowfile.Error{Path: path, What: "can't be written", Do: "name a folder with room that can be written to",
-				Kind: arrowfile.ErrWrite, Err: bare(err)}
+			return &table.Error{Path: path, What: "can't be written", Do: "name a folder with room that can be written to",
+				Kind: table.ErrWrite, Err: bare(err)}
 		}
 	}
 	return nil

@@ -9,6 +9,7 @@ import (
 	"time"
 
 	"labelweir/connectors/arrowfile"
+	"labelweir/connectors/table"
 	"labelweir/filter"
 	"labelweir/filter/cmd/labelweir/internal/judge/metric"
 	"labelweir/filter/cmd/labelweir/internal/judge/panel"
@@ -74,7 +75,7 @@ func judgeStream(ctx context.Context, s *panel.Stream, how sliding) (f streamFig
 	sink, fold := &tags{}, make([]float64, len(s.Wrong))
 	f.trained = newWatched(c, fold)
 	sweep := filter.Sweep{Config: c, Sink: sink, Learner: f.trained, Open: func(context.Context) (filter.Source, error) {
-		return arrowfile.Open(s.Path, s.Record, arrowfile.DefaultOptions())
+		return arrowfile.Open(s.Path, s.Record, table.DefaultOptions())
 	}}
 	start := time.Now()
 	f.report, f.err = sweep.Run(ctx)

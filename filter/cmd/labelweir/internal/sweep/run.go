@@ -9,13 +9,14 @@ import (
 	"time"
 
 	"labelweir/connectors/arrowfile"
+	"labelweir/connectors/table"
 	"labelweir/filter"
 	"labelweir/filter/config"
 )
 
 // Watch is who wants to hear of a sweep while it runs. Each part may be nil.
 type Watch struct {
-	Chosen   func([]arrowfile.Choice)              // once, when the columns are known and the outputs can be created
+	Chosen   func([]table.Choice)                  // once, when the columns are known and the outputs can be created
 	Progress func(phase string, done, total int64) // from one goroutine at a time
 	Now      func() time.Time                      // clock of the report's times; nil: time.Now
 }
@@ -24,7 +25,7 @@ type Watch struct {
 // stand under their names afterwards, or, when the error is not nil, none but those committed before it: the tagged file
 // and the quarantine go first, then the snapshot and the report.
 func Run(ctx context.Context, c *config.Config, w Watch) (*filter.Report, error) {
-	options := arrowfile.DefaultOptions()
+	options := table.DefaultOptions()
 	options.Replace = c.Output.Replace
 	first, err := open(ctx, c, options)
 	if err != nil {
@@ -43,8 +44,8 @@ func Run(ctx context.Context, c *config.Config, w Watch) (*filter.Report, error)
 	}
 	defer reportFile.close()
 
-	sink, err := arrowfile.Create(
-		arrowfile.OutputPaths{Tagged: c.Output.Tagged, Quarantine: c.Output.Quarantine}, first, options)
+	sink, err := table.Create(
+		table.OutputPaths{Tagged: c.Output.Tagged, Quarantine: c.Output.Quarantine}, first, options)
 	if err != nil {
 		return nil, err
 	}
@@ -80,7 +81,7 @@ func Run(ctx context.Context, c *config.Config, w Watch) (*filter.Report, error)
 
 // open reads the input's beginning: the columns tell what there is to learn from, the first rows how the file is
 // compressed, which the output takes over.
-func open(ctx context.Context, c *config.Config, options arrowfile.Options) (*arrowfile.Source, error) {
+func open(ctx context.Context, c *config.Config, options table.Options) (*table.Source, error) {
 	source, err := arrowfile.Open(c.Input.File, c.Record, options)
 	if err != nil {
 		return nil, err
@@ -104,7 +105,7 @@ func writeReport(w io.Writer, report *filter.Report) error {
 }
 
 // used turns the connector's choice into the report's form.
-func used(choice []arrowfile.Choice) []filter.FieldUse {
+func used(choice []table.Choice) []filter.FieldUse {
 	uses := make([]filter.FieldUse, len(choice))
 	for i, c := range choice {
 		u := filter.FieldUse{Path: c.Column, Use: "left-out", Why: c.Why}

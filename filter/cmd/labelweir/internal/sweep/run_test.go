@@ -6,7 +6,7 @@ import (
 	"reflect"
 	"testing"
 
-	"labelweir/connectors/arrowfile"
+	"labelweir/connectors/table"
 	"labelweir/filter"
 	"labelweir/model"
 )
@@ -35,7 +35,7 @@ func TestTheGateIsAboveNotAt(t *testing.T) {
 }
 
 func TestEveryColumnIsInTheReport(t *testing.T) {
-	got := used([]arrowfile.Choice{
+	got := used([]table.Choice{
 		{Column: "grade", Why: "the label"},
 		{Column: "at", Why: "the time"},
 		{Column: "who", Why: "the source"},

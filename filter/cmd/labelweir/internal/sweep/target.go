@@ -8,7 +8,7 @@ import (
 	"os"
 	"path/filepath"
 
-	"labelweir/connectors/arrowfile"
+	"labelweir/connectors/table"
 )
 
 // target is a small output file. It is written beside its final place, so that no half file ever stands there.
@@ -20,7 +20,7 @@ type target struct {
 }
 
 // openTarget makes sure that path can be written and is free, long before there is anything to write; path "" gives
-// nil, on which every method does nothing. Errors wrap arrowfile.ErrTarget.
+// nil, on which every method does nothing. Errors wrap table.ErrTarget.
 func openTarget(path string, replace bool) (*target, error) {
 	if path == "" {
 		return nil, nil
@@ -51,10 +51,10 @@ func (t *target) free() error {
 	case err != nil:
 		return t.cannot(err)
 	case !info.Mode().IsRegular():
-		return &arrowfile.Error{Path: t.path, What: "is no plain file", Do: "name another file", Kind: arrowfile.ErrTarget}
+		return &table.Error{Path: t.path, What: "is no plain file", Do: "name another file", Kind: table.ErrTarget}
 	case !t.replace:
-		return &arrowfile.Error{Path: t.path, What: "exists", Do: "name another file, or give --replace",
-			Kind: arrowfile.ErrTarget}
+		return &table.Error{Path: t.path, What: "exists", Do: "name another file, or give --replace",
+			Kind: table.ErrTarget}
 	}
 	return nil
 }
@@ -65,11 +65,11 @@ func (t *target) cannot(err error) error {
 	if errors.As(err, &p) {
 		err = p.Err // the path of the part file says nothing to the user
 	}
-	return &arrowfile.Error{Path: t.path, What: "can't be created", Do: do, Kind: arrowfile.ErrTarget, Err: err}
+	return &table.Error{Path: t.path, What: "can't be created", Do: do, Kind: table.ErrTarget, Err: err}
 }
 
 // commit writes the content, makes sure that it is on disk, and gives the file its name. Errors wrap
-// arrowfile.ErrWrite or ErrTarget.
+// table.ErrWrite or ErrTarget.
 func (t *target) commit(write func(io.Writer) error) error {
 	if t == nil {
 		return nil
@@ -86,8 +86,8 @@ func (t *target) commit(write func(io.Writer) error) error {
 		if errors.As(err, &p) {
 			err = p.Err
 		}
-		return &arrowfile.Error{Path: t.path, What: "can't be written", Do: "make room, or name a file elsewhere",
-			Kind: arrowfile.ErrWrite, Err: err}
+		return &table.Error{Path: t.path, What: "can't be written", Do: "make room, or name a file elsewhere",
+			Kind: table.ErrWrite, Err: err}
 	}
 	if err := t.free(); err != nil {
 		return err

@@ -7,7 +7,7 @@ import (
 	"path/filepath"
 	"testing"
 
-	"labelweir/connectors/arrowfile"
+	"labelweir/connectors/table"
 )
 
 func write(text string) func(io.Writer) error {
@@ -60,7 +60,7 @@ func TestAFileThatExistsIsReplacedOnlyOnRequest(t *testing.T) {
 	if err := os.WriteFile(path, []byte("as it was"), 0o666); err != nil {
 		t.Fatal(err)
 	}
-	if _, err := openTarget(path, false); !errors.Is(err, arrowfile.ErrTarget) {
+	if _, err := openTarget(path, false); !errors.Is(err, table.ErrTarget) {
 		t.Errorf("got %v", err)
 	}
 	only(t, dir, map[string]string{"report.json": "as it was"})
@@ -85,7 +85,7 @@ func TestAFileThatCameMeanwhileIsNotWrittenOver(t *testing.T) {
 	if err := os.WriteFile(path, []byte("another's"), 0o666); err != nil {
 		t.Fatal(err)
 	}
-	if err := target.commit(write("mine")); !errors.Is(err, arrowfile.ErrTarget) {
+	if err := target.commit(write("mine")); !errors.Is(err, table.ErrTarget) {
 		t.Errorf("got %v", err)
 	}
 	target.close()
@@ -105,7 +105,7 @@ func TestAFailedWriteLeavesNothing(t *testing.T) {
 		}
 		return full
 	})
-	if !errors.Is(err, arrowfile.ErrWrite) || !errors.Is(err, full) {
+	if !errors.Is(err, table.ErrWrite) || !errors.Is(err, full) {
 		t.Errorf("got %v", err)
 	}
 	target.close()
@@ -115,7 +115,7 @@ func TestAFailedWriteLeavesNothing(t *testing.T) {
 func TestTargetsThatCanNotBe(t *testing.T) {
 	dir := t.TempDir()
 	for _, path := range []string{dir, filepath.Join(dir, "missing", "report.json"), os.DevNull} {
-		if _, err := openTarget(path, true); !errors.Is(err, arrowfile.ErrTarget) {
+		if _, err := openTarget(path, true); !errors.Is(err, table.ErrTarget) {
 			t.Errorf("%s: got %v", path, err)
 		}
 	}

@@ -1,4 +1,4 @@
-package arrowfile
+package table
 
 import (
 	"github.com/apache/arrow/go/v16/arrow"
@@ -116,33 +116,19 @@ func dictionaries(rec arrow.Record) []arrow.ArrayData {
 	return out
 }
 
-// How the dictionaries of two record batches compare.
-type dictChange int
-
-const (
-	sameDicts  dictChange = iota
-	otherDicts            // arrow's writer sees the difference
-	blurDicts             // they differ by so little that arrow's writer would take them for the same
-)
-
-// compareDicts compares two lists of dictionaries of one schema.
-func compareDicts(a, b []arrow.ArrayData) dictChange {
-	change := sameDicts
+// equalDicts tells whether two lists of dictionaries of one schema hold the same values.
+func equalDicts(a, b []arrow.ArrayData) bool {
 	for i := range a {
 		if a[i] == b[i] {
 			continue
 		}
 		x, y := array.MakeFromData(a[i]), array.MakeFromData(b[i])
-		nan := array.WithNaNsEqual(true)
-		switch {
-		case array.ApproxEqual(x, y, nan, array.WithAbsTolerance(0)):
-		case array.ApproxEqual(x, y, nan):
-			change = blurDicts
-		case change == sameDicts:
-			change = otherDicts
-		}
+		same := array.ApproxEqual(x, y, array.WithNaNsEqual(true), array.WithAbsTolerance(0))
 		x.Release()
 		y.Release()
+		if !same {
+			return false
+		}
 	}
-	return change
+	return true
 }

@@ -1,4 +1,4 @@
-package arrowfile
+package table
 
 import (
 	"fmt"
@@ -23,6 +23,7 @@ type feature struct {
 
 // planner turns a record into a plan, or an error that says which name is wrong.
 type planner struct {
+	in     *input
 	path   string
 	schema *arrow.Schema
 	names  []string // see uniqueNames
@@ -72,7 +73,7 @@ func (p *planner) one(part, name string) (int, error) {
 
 func (p *planner) unknown(part, name string) error {
 	e := &Error{Path: p.path, What: fmt.Sprintf("there is no column %q for the %s", name, part), Kind: ErrColumn}
-	if near := nearest(name, p.names); near != "" {
+	if near := filter.Nearest(name, p.names); near != "" {
 		e.Do = fmt.Sprintf("the nearest name is %q; all columns: %s", near, p.list())
 	} else {
 		e.Do = "the columns are: " + p.list()

@@ -1,31 +1,21 @@
-package arrowfile
+package table
 
 import (
 	"bufio"
-	"errors"
 
 	"github.com/apache/arrow/go/v16/arrow"
 	"github.com/apache/arrow/go/v16/arrow/array"
-	"github.com/apache/arrow/go/v16/arrow/ipc"
 
 	"labelweir/filter"
 )
 
-// Record batches written have blockRows rows, fewer when these take more than blockBytes and at the end, so that the
-// output does not depend on how the input was cut.
-const (
-	blockRows  = 16384
-	blockBytes = 32 << 20
-)
-
-// output is one file being written: rows gather in pieces until they make a record batch.
+// output is one file being written: rows gather in pieces until they make a record batch of Options.BlockRows rows,
+// fewer when these take more than Options.BlockBytes and at the end, so that it does not depend on how the input was cut.
 type output struct {
 	target *target
-	format Format
-	footer []string // metadata
+	format *Format
 	schema *arrow.Schema
 	opt    Options
-	codec  Codec
 
 	pieces     []arrow.Record
 	rows, bits int64
@@ -34,17 +24,25 @@ type output struct {
 	tags       *tagColumns
 
 	buf     *bufio.Writer
-	wr      *ipc.Writer // made at first use
-	written int64       // rows
+	wr      Writer
+	written int64 // rows
 }
 
-var errBlurredDictionary = errors.New("a dictionary of floating-point numbers is replaced by one that differs by less than 0.00001, " +
-	"which can't be written; decode the column before sweeping")
-
-func newOutput(t *target, src *Source, schema *arrow.Schema, opt Options) *output {
-	o := &output{target: t, schema: schema, opt: opt, format: src.Format(), footer: src.in.msgs.footer, codec: src.codec(), tags: newTagColumns(opt.mem)}
-	o.buf = bufio.NewWriterSize(t.file, 1<<18)
-	return o
+// newOutput begins a file; when it fails, the target is still to be dropped.
+func newOutput(t *target, src *Source, schema *arrow.Schema, opt Options) (*output, error) {
+	o := &output{target: t, schema: schema, opt: opt, tags: newTagColumns(opt.Memory), buf: bufio.NewWriterSize(t.file, 1<<18)}
+	var err error
+	if o.format, err = outFormat(t.path, src.in.format, opt); err != nil {
+		return o, err
+	}
+	how := WriteOptions{Memory: opt.Memory}
+	if o.format.Name == src.in.format.Name {
+		how.Manner = src.in.manner()
+	}
+	return o, fenced(o, func() error {
+		o.wr, err = o.format.Create(o.buf, schema, how)
+		return err
+	})
 }
 
 // add takes the given runs of rec with their tags.
@@ -56,7 +54,7 @@ func (o *output) add(rec arrow.Record, runs []run, tags []filter.Tag) error {
 		return o.addPiece(rec, tags)
 	}
 	// A few rows must not hold all of their record batch in memory, so they are copied.
-	piece, err := pick(rec, runs, o.opt.mem)
+	piece, err := pick(rec, runs, o.opt.Memory)
 	if err != nil {
 		return err
 	}
@@ -74,21 +72,21 @@ func (o *output) addPiece(piece arrow.Record, tags []filter.Tag) error {
 		return err
 	}
 	for at := int64(0); at < piece.NumRows(); {
-		rest := piece.NewSlice(at, min(at+o.opt.blockRows-o.rows, piece.NumRows()))
-		n := fitting(rest, 8*o.opt.blockBytes-o.bits)
-		if o.rows > 0 && n == 1 && sizeOfRecord(rest, 1) > 8*o.opt.blockBytes-o.bits {
+		rest := piece.NewSlice(at, min(at+o.opt.BlockRows-o.rows, piece.NumRows()))
+		n := fitting(rest, 8*o.opt.BlockBytes-o.bits)
+		if o.rows > 0 && n == 1 && sizeOfRecord(rest, 1) > 8*o.opt.BlockBytes-o.bits {
 			n = 0 // the block is full
 		}
 		if n > 0 {
 			if o.rows == 0 {
-				o.tags.reserve(int(o.opt.blockRows)) // all at once: lengths of bitmaps written depend on the room there is
+				o.tags.reserve(int(o.opt.BlockRows)) // all at once: lengths of bitmaps written depend on the room there is
 			}
 			o.keep(rest.NewSlice(0, n))
 			for i := range n {
 				o.tags.add(&tags[at+i])
 			}
 		}
-		full := o.rows == o.opt.blockRows || n < rest.NumRows()
+		full := o.rows == o.opt.BlockRows || n < rest.NumRows()
 		rest.Release()
 		if at += n; full {
 			if err := o.flush(); err != nil {
@@ -108,15 +106,8 @@ func (o *output) keep(piece arrow.Record) {
 // follow ends the block when a dictionary changes, so that each block has its dictionaries as they came.
 func (o *output) follow(piece arrow.Record) error {
 	next := dictionaries(piece)
-	change := otherDicts
-	if o.last != nil {
-		change = compareDicts(o.dicts, next)
-	}
-	if change == sameDicts {
+	if o.last != nil && equalDicts(o.dicts, next) {
 		return nil
-	}
-	if change == blurDicts {
-		return errBlurredDictionary
 	}
 	if err := o.flush(); err != nil {
 		return err
@@ -134,7 +125,7 @@ func (o *output) flush() error {
 	if o.rows == 0 {
 		return nil
 	}
-	rec, err := gather(o.pieces, o.opt.mem)
+	rec, err := gather(o.pieces, o.opt.Memory)
 	if err != nil {
 		return err
 	}
@@ -146,7 +137,7 @@ func (o *output) flush() error {
 	for _, t := range tags {
 		t.Release()
 	}
-	if err := o.writer().Write(full); err != nil {
+	if err := o.wr.Write(full); err != nil {
 		return err
 	}
 	o.written += o.rows
@@ -163,30 +154,16 @@ func (o *output) forget() {
 	o.pieces, o.rows, o.bits = o.pieces[:0], 0, 0
 }
 
-// writer makes arrow's writer at first use.
-func (o *output) writer() *ipc.Writer {
-	if o.wr == nil {
-		opts := []ipc.Option{ipc.WithSchema(o.schema), ipc.WithAllocator(o.opt.mem)}
-		switch o.codec {
-		case LZ4:
-			opts = append(opts, ipc.WithLZ4())
-		case Zstd:
-			opts = append(opts, ipc.WithZstd())
-		}
-		o.wr = ipc.NewWriterWithPayloadWriter(&payloads{w: o.buf, format: o.format, meta: o.footer}, opts...)
-	}
-	return o.wr
-}
-
 // finish writes what is left and the end of the file, down to the disk.
 func (o *output) finish() error {
 	if err := o.flush(); err != nil {
 		return err
 	}
-	if err := o.writer().Close(); err != nil {
+	wr := o.wr
+	o.wr = nil
+	if err := wr.Close(); err != nil {
 		return err
 	}
-	o.wr = nil
 	if err := o.buf.Flush(); err != nil {
 		return err
 	}
@@ -200,7 +177,7 @@ func (o *output) release() {
 		o.last.Release()
 		o.last, o.dicts = nil, nil
 	}
-	if o.wr != nil { // it gives its dictionaries back in Close only
+	if o.wr != nil { // it gives its memory back in Close only
 		o.buf.Reset(discard{})
 		_ = o.wr.Close()
 		o.wr = nil

@@ -1,4 +1,4 @@
-package arrowfile
+package table
 
 import (
 	"github.com/apache/arrow/go/v16/arrow"

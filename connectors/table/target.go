@@ -1,4 +1,4 @@
-package arrowfile
+package table
 
 import (
 	"errors"
@@ -8,7 +8,7 @@ import (
 	"path/filepath"
 	"syscall"
 
-	"labelweir/connectors/arrowfile/internal/disk"
+	"labelweir/connectors/internal/disk"
 )
 
 // OutputPaths are the files that a Sink writes.
@@ -120,6 +120,11 @@ func (t *target) drop() error {
 func (t *target) fault(what string, kind, err error) error {
 	var own *Error
 	if errors.As(err, &own) {
+		if own.Path == "" { // writers know no names
+			named := *own
+			named.Path = t.path
+			return &named
+		}
 		return err
 	}
 	e := &Error{Path: t.path, What: what, Kind: kind, Err: bare(err)}
@@ -150,10 +155,20 @@ func bare(err error) error {
 }
 
 // distinct tells whether input and outputs are different files, links resolved.
-func distinct(d disk.FS, input string, out OutputPaths) error {
+func distinct(d disk.FS, inputs []Input, out OutputPaths) error {
 	if out.Quarantine != "" && resolved(out.Tagged) == resolved(out.Quarantine) {
 		return &Error{Path: out.Quarantine, What: "is both the tagged output and the quarantine", Do: "name two files", Kind: ErrTarget}
 	}
+	for _, in := range inputs {
+		if err := apart(d, in.Path, out); err != nil {
+			return err
+		}
+	}
+	return nil
+}
+
+// apart tells whether an input is none of the outputs.
+func apart(d disk.FS, input string, out OutputPaths) error {
 	in, err := d.Stat(input)
 	if err != nil {
 		return nil // the input is open; its name may be gone

@@ -1,4 +1,4 @@
-package arrowfile
+package table
 
 import (
 	"math"
@@ -11,29 +11,11 @@ import (
 	"labelweir/model"
 )
 
-// tagNames are the columns appended to every record, in this order. Their types:
-//
-//	weir_score     float64, null when unscored
-//	weir_verdict   dictionary<int8, utf8> of pass, suspect, quarantine, unscored
-//	weir_implied   utf8, null when unscored
-//	weir_margin    float64, null when unscored
-//	weir_reason    dictionary<int8, utf8> of the reasons, null when scored
-//	weir_snapshot  utf8, null when there was no snapshot
-//
-// Scores are float64 so that a score compares with a threshold as the verdict did. Only lists that are known from the
-// start are dictionaries, for those of an Arrow file can't grow.
-func tagNames() []string {
-	return []string{"weir_score", "weir_verdict", "weir_implied", "weir_margin", "weir_reason", "weir_snapshot"}
-}
-
-// isTag tells whether a column name is one of tagNames.
-func isTag(name string) bool { return indexOf(tagNames(), name) >= 0 }
-
 func tagFields() []arrow.Field {
 	dict := &arrow.DictionaryType{IndexType: arrow.PrimitiveTypes.Int8, ValueType: arrow.BinaryTypes.String}
 	types := []arrow.DataType{arrow.PrimitiveTypes.Float64, dict, arrow.BinaryTypes.String, arrow.PrimitiveTypes.Float64, dict, arrow.BinaryTypes.String}
 	fields := make([]arrow.Field, len(types))
-	for i, name := range tagNames() {
+	for i, name := range TagNames() {
 		fields[i] = arrow.Field{Name: name, Type: types[i], Nullable: name != "weir_verdict"}
 	}
 	return fields
@@ -58,16 +40,16 @@ func newTagColumns(mem memory.Allocator) *tagColumns {
 	for v := filter.Pass; v <= filter.Unscored; v++ {
 		names = append(names, v.String())
 	}
-	t.verdicts = texts(mem, names)
+	t.verdicts = dictionaryOf(mem, names)
 	names = nil
 	for r := model.NoLabel; r <= model.InputsChanged; r++ {
 		names = append(names, r.String())
 	}
-	t.reasons = texts(mem, names)
+	t.reasons = dictionaryOf(mem, names)
 	return t
 }
 
-func texts(mem memory.Allocator, names []string) arrow.Array {
+func dictionaryOf(mem memory.Allocator, names []string) arrow.Array {
 	b := array.NewStringBuilder(mem)
 	defer b.Release()
 	b.AppendValues(names, nil)

@@ -1,4 +1,4 @@
-package arrowfile
+package table
 
 import (
 	"fmt"
@@ -70,7 +70,7 @@ func judge(f arrow.Field, h habit) (model.Kind, string) {
 		return 0, why
 	}
 	switch {
-	case isTag(f.Name):
+	case IsTag(f.Name):
 		return 0, "a tag of an earlier run"
 	case h.rows > 0 && h.valid == 0:
 		return kind, "all values missing in the first rows"

@@ -1,4 +1,4 @@
-package arrowfile
+package table
 
 import (
 	"io"
@@ -18,20 +18,23 @@ type habit struct {
 	last  float64
 }
 
-// peek reads the first rows of an input, as many as asked for, and closes it. The answer depends on the rows alone,
+// peek opens the input once more and reads its first rows, as many as asked for. The answer depends on the rows alone,
 // not on how they are cut into record batches.
-func peek(path string, opt Options) (habits []habit, err error) {
-	in, err := openInput(path, opt)
+func peek(opened *input, opt Options) (habits []habit, err error) {
+	if opt.Unreadable != nil {
+		opt.Unreadable = func(Unreadable) error { return nil } // they are passed on when all rows are read
+	}
+	in, err := openInput(opened.files, opened.text, opened.schema, opt)
 	if err != nil {
 		return nil, err
 	}
 	defer in.close()
 	defer func() {
 		if p := recover(); p != nil {
-			habits, err = nil, in.damaged("its values can't be read", caught(p))
+			habits, err = nil, in.damaged("its values can't be read", Caught(p))
 		}
 	}()
-	habits = make([]habit, in.rd.Schema().NumFields())
+	habits = make([]habit, in.schema.NumFields())
 	for i := range habits {
 		habits[i] = habit{counting: true, text: true, names: newCoder()}
 	}

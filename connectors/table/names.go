@@ -1,4 +1,4 @@
-package arrowfile
+package table
 
 import (
 	"errors"

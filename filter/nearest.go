@@ -1,11 +1,20 @@
-package config
+package filter
 
-// Nearest gives the name of known that word was most likely meant to be: the one the fewest letters away, the first of
-// them when there are several. It is empty when more than a third of the word's letters would have to change.
+import "strings"
+
+// Nearest gives the name of known that word was most likely meant to be: the one the fewest letters away, capitals aside,
+// one that only ends differently before others, and the first of several. It is empty when more than a third of the word's
+// letters would have to change.
 func Nearest(word string, known []string) string {
-	best, least := "", max(1, len(word)/3)+1
+	word = strings.ToLower(word)
+	best, least := "", 2*max(1, len([]rune(word))/3)+1
 	for _, name := range known {
-		if d := lettersBetween(word, name); d < least {
+		low := strings.ToLower(name)
+		d := 2 * lettersBetween(word, low)
+		if strings.HasPrefix(word, low) || strings.HasPrefix(low, word) {
+			d-- // a missing or added ending rather than a changed letter
+		}
+		if d < least {
 			best, least = name, d
 		}
 	}

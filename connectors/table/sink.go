@@ -1,4 +1,4 @@
-package arrowfile
+package table
 
 import (
 	"context"
@@ -8,16 +8,14 @@ import (
 
 	"github.com/apache/arrow/go/v16/arrow"
 
-	"labelweir/connectors/arrowfile/internal/disk"
+	"labelweir/connectors/internal/disk"
 	"labelweir/filter"
 )
 
-// Sink writes tagged records to one or two files in the format of the input. It implements filter.Sink and belongs to
-// one goroutine.
+// Sink writes tagged records to one or two files. It implements filter.Sink and belongs to one goroutine.
 //
-// Columns, dictionaries, nulls and metadata of schema, fields and footer stay as they are; the tag columns follow.
-// Buffers are compressed as the input's are, and stand in this machine's byte order. Record batches are cut anew, see
-// blockRows. Metadata of single record batches is not kept: arrow/go v16 does not read it.
+// Columns, dictionaries, nulls and metadata stay as they are as far as the output's format has them; the tag columns
+// follow. Record batches are cut anew, see Options.BlockRows.
 type Sink struct {
 	disk   disk.FS
 	schema *arrow.Schema // of the input
@@ -38,30 +36,28 @@ const (
 	sinkClosed
 )
 
-// Create starts writing out what was read from src, or from another Source of the same file; src may be closed before
-// the sink. Nothing stands under the
-// final names before Commit. Errors wrap ErrTarget, or ErrColumn when the input has tag columns already.
+// Create starts writing out what was read from src, or from another Source of the same files; src may be closed before
+// the sink. Nothing stands under the final names before Commit. Errors wrap ErrTarget, or ErrColumn when the input has tag columns already.
 func Create(out OutputPaths, src *Source, opt Options) (*Sink, error) {
-	return create(disk.OS{}, out, src, opt)
-}
-
-func create(d disk.FS, out OutputPaths, src *Source, opt Options) (*Sink, error) {
+	if len(opt.Formats) == 0 {
+		opt.Formats = src.opt.Formats
+	}
 	opt = opt.filled()
-	schema := src.in.rd.Schema()
+	d, schema := opt.Disk, src.in.schema
 	for _, f := range schema.Fields() {
-		if isTag(f.Name) {
-			return nil, &Error{Path: src.in.path, Column: f.Name, What: "is already there, from an earlier run",
+		if IsTag(f.Name) {
+			return nil, &Error{Path: src.in.title(), Column: f.Name, What: "is already there, from an earlier run",
 				Do: "drop the weir_ columns of the input first", Kind: ErrColumn}
 		}
 		if !canGather(f.Type) {
-			return nil, &Error{Path: src.in.path, Column: f.Name, What: fmt.Sprintf("rows of type %s can't be copied", f.Type),
+			return nil, &Error{Path: src.in.title(), Column: f.Name, What: fmt.Sprintf("rows of type %s can't be copied", f.Type),
 				Do: "unions and run-end-encoded values inside of lists and structs are not supported: drop or flatten the column", Kind: ErrColumn}
 		}
 	}
 	if out.Tagged == "" {
-		return nil, &Error{Path: src.in.path, What: "no output is named for it", Do: "name a file for the tagged records", Kind: ErrTarget}
+		return nil, &Error{Path: src.in.title(), What: "no output is named for it", Do: "name a file for the tagged records", Kind: ErrTarget}
 	}
-	if err := distinct(d, src.in.path, out); err != nil {
+	if err := distinct(d, src.in.files, out); err != nil {
 		return nil, err
 	}
 	meta := schema.Metadata()
@@ -75,10 +71,12 @@ func create(d disk.FS, out OutputPaths, src *Source, opt Options) (*Sink, error)
 			continue
 		}
 		t, err := newTarget(d, o.path, opt.Replace)
+		if err == nil {
+			*o.to, err = newOutput(t, src, full, opt)
+		}
 		if err != nil {
 			return nil, errors.Join(err, s.Close())
 		}
-		*o.to = newOutput(t, src, full, opt)
 	}
 	return s, nil
 }
@@ -102,13 +100,13 @@ func (s *Sink) Deliver(ctx context.Context, b *filter.Batch, tags []filter.Tag) 
 	rec, ok := b.Payload.(arrow.Record)
 	switch {
 	case !ok:
-		panic("arrowfile: batch of another source")
+		panic("table: batch of another source")
 	case len(tags) != b.Rows() || rec.NumRows() != int64(len(tags)):
-		panic(fmt.Sprintf("arrowfile: %d tags for %d rows", len(tags), b.Rows()))
+		panic(fmt.Sprintf("table: %d tags for %d rows", len(tags), b.Rows()))
 	case b.First != s.next:
-		panic(fmt.Sprintf("arrowfile: batch from row %d where row %d comes next", b.First, s.next))
+		panic(fmt.Sprintf("table: batch from row %d where row %d comes next", b.First, s.next))
 	case rec.Schema() != s.schema && !rec.Schema().Equal(s.schema):
-		panic("arrowfile: batch of another schema")
+		panic("table: batch of another schema")
 	}
 	s.split(tags)
 	if len(s.toHeld) > 0 && s.held == nil {
@@ -162,7 +160,7 @@ func (s *Sink) write(o *output, rec arrow.Record, runs []run, tags []filter.Tag)
 func fenced(o *output, do func() error) (err error) {
 	defer func() {
 		if p := recover(); p != nil {
-			err = caught(p)
+			err = Caught(p)
 		}
 		if err != nil {
 			err = o.target.fault("can't be written", ErrWrite, err)

@@ -1,4 +1,4 @@
-package arrowfile
+package table
 
 import (
 	"context"
@@ -12,7 +12,7 @@ import (
 	"labelweir/model"
 )
 
-// Source reads an Arrow IPC file or stream. It implements filter.Source and belongs to one goroutine.
+// Source reads the files of an input, one after the other. It implements filter.Source and belongs to one goroutine.
 type Source struct {
 	in     *input
 	opt    Options
@@ -31,11 +31,11 @@ type Source struct {
 	closed bool
 }
 
-// Open opens an Arrow IPC file or stream. The record's label must name a column; its fields are inferred when it has
-// none. Errors wrap ErrUnreadable or ErrColumn.
-func Open(path string, rec filter.Record, opt Options) (src *Source, err error) {
+// Open opens files of the same columns as one input. The record's label must name a column; its fields are inferred from
+// the first rows when it has none. Errors wrap ErrUnreadable or ErrColumn.
+func Open(files []Input, rec filter.Record, opt Options) (src *Source, err error) {
 	opt = opt.filled()
-	in, err := openInput(path, opt)
+	in, err := openInput(files, texts(rec), nil, opt)
 	if err != nil {
 		return nil, err
 	}
@@ -44,9 +44,8 @@ func Open(path string, rec filter.Record, opt Options) (src *Source, err error) 
 			in.close()
 		}
 	}()
-	schema := in.rd.Schema()
-	names := uniqueNames(schema)
-	p := &planner{path: path, schema: schema, names: names}
+	names := uniqueNames(in.schema)
+	p := &planner{in: in, path: in.title(), schema: in.schema, names: names}
 	pl, err := p.parts(rec)
 	if err != nil {
 		return nil, err
@@ -56,13 +55,13 @@ func Open(path string, rec filter.Record, opt Options) (src *Source, err error) 
 		return nil, err
 	}
 	if len(rec.Fields) == 0 {
-		rec = explicit(rec, choice, schema)
+		rec = explicit(rec, choice, in.schema)
 	}
 	if err := p.features(rec, &pl); err != nil {
 		return nil, err
 	}
 	if len(pl.features) == 0 {
-		return nil, &Error{Path: path, What: fmt.Sprintf("none of its %d columns can be a field", len(names)),
+		return nil, &Error{Path: p.path, What: fmt.Sprintf("none of its %d columns can be a field", len(choice)),
 			Do: "name the fields, or add columns of numbers, text or vectors", Kind: ErrColumn}
 	}
 	src = &Source{in: in, opt: opt, rec: rec, plan: pl, names: names, choice: choice,
@@ -77,6 +76,22 @@ func Open(path string, rec filter.Record, opt Options) (src *Source, err error) 
 	return src, nil
 }
 
+// texts names the columns whose values are read as names whatever the fields are.
+func texts(rec filter.Record) []string {
+	var names []string
+	for _, name := range []string{rec.Label, rec.Source} {
+		if name != "" {
+			names = append(names, name)
+		}
+	}
+	for _, f := range rec.Fields {
+		if f.Kind == model.Category {
+			names = append(names, f.Path)
+		}
+	}
+	return names
+}
+
 // choose infers the fields, or says for each column whether the record names it.
 func choose(p *planner, rec filter.Record, pl plan, opt Options) ([]Choice, error) {
 	parts := map[int]string{}
@@ -89,7 +104,7 @@ func choose(p *planner, rec filter.Record, pl plan, opt Options) ([]Choice, erro
 		}
 	}
 	if len(rec.Fields) == 0 {
-		habits, err := peek(p.path, opt)
+		habits, err := peek(p.in, opt)
 		if err != nil {
 			return nil, err
 		}
@@ -122,25 +137,16 @@ func (s *Source) Record() filter.Record {
 	return rec
 }
 
-// Path is the file's path as it was given.
-func (s *Source) Path() string { return s.in.path }
-
-// Format is the file's format.
-func (s *Source) Format() Format { return s.in.msgs.format }
-
-// codec is how the input is compressed; damaged bytes count as not.
-func (s *Source) codec() (c Codec) {
-	defer func() { _ = recover() }()
-	return s.in.msgs.firstCodec()
-}
+// Format is the name of the format of the file being read.
+func (s *Source) Format() string { return s.in.format.Name }
 
 // Progress tells how many bytes of how many have been read.
-func (s *Source) Progress() (done, size int64) { return s.in.msgs.seen, s.in.msgs.size }
+func (s *Source) Progress() (done, size int64) { return s.in.progress() }
 
 // Next implements filter.Source.
 func (s *Source) Next(ctx context.Context) (*filter.Batch, error) {
 	if s.closed {
-		return nil, &Error{Path: s.in.path, What: "read after Close", Kind: ErrClosed}
+		return nil, &Error{Path: s.in.title(), What: "read after Close", Kind: ErrClosed}
 	}
 	if err := ctx.Err(); err != nil {
 		return nil, err
@@ -181,7 +187,7 @@ func (s *Source) next() (*filter.Batch, error) {
 func (s *Source) batch(part arrow.Record) (b *filter.Batch, err error) {
 	defer func() {
 		if p := recover(); p != nil {
-			b, err = nil, s.in.damaged("its values can't be read", caught(p))
+			b, err = nil, s.in.damaged("its values can't be read", Caught(p))
 		}
 	}()
 	n := int(part.NumRows())
@@ -252,7 +258,8 @@ func (s *Source) codes(c *coder, part arrow.Record, index int) ([]int32, error) 
 
 // valueError says that the value in row i of the current slice means nothing as what the column is used for.
 func (s *Source) valueError(index, i int, err error) error {
-	e := &Error{Path: s.in.path, Batch: s.in.msgs.at, Row: s.row + int64(i) + 1, Column: s.names[index], Kind: ErrUnreadable}
+	e := At(s.in.place(), ErrUnreadable, "", "", nil)
+	e.Row, e.Column = s.row-s.in.before+int64(i)+1, s.names[index]
 	if f := fractional(0); errors.As(err, &f) {
 		e.What, e.Do = f.Error(), "convert the column to text, integers or a dictionary, or cut it into ranges"
 		return e

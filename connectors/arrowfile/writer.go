@@ -1,0 +1,139 @@
+package arrowfile
+
+import (
+	"errors"
+	"io"
+
+	"github.com/apache/arrow/go/v16/arrow"
+	"github.com/apache/arrow/go/v16/arrow/array"
+	"github.com/apache/arrow/go/v16/arrow/ipc"
+
+	"labelweir/connectors/table"
+)
+
+// manner is what an output takes over from its input beside the schema.
+type manner struct {
+	codec  Codec
+	footer []string // metadata of the footer, keys and values in turn
+}
+
+// writer writes record batches with arrow's writer. Buffers are compressed as the input's are, and stand in this
+// machine's byte order. Metadata of single record batches is not kept: arrow/go v16 does not read it.
+type writer struct {
+	wr   *ipc.Writer
+	mute *mute
+	bad  bool
+
+	dicts []arrow.ArrayData // of the record batch written last
+	last  arrow.Record      // keeps dicts alive
+}
+
+func newWriter(w io.Writer, format Format, schema *arrow.Schema, opt table.WriteOptions) *writer {
+	how, _ := opt.Manner.(manner)
+	opts := []ipc.Option{ipc.WithSchema(schema), ipc.WithAllocator(opt.Memory)}
+	switch how.codec {
+	case LZ4:
+		opts = append(opts, ipc.WithLZ4())
+	case Zstd:
+		opts = append(opts, ipc.WithZstd())
+	}
+	m := &mute{w: w}
+	return &writer{wr: ipc.NewWriterWithPayloadWriter(&payloads{w: m, format: format, meta: how.footer}, opts...), mute: m}
+}
+
+var errBlurredDictionary = errors.New("a dictionary of floating-point numbers is replaced by one that differs by less than 0.00001, " +
+	"which can't be written; decode the column before sweeping")
+
+// Write implements table.Writer.
+func (w *writer) Write(rec arrow.Record) error {
+	w.bad = true // unless all goes well
+	next := dictionaries(rec)
+	if w.last != nil && blurred(w.dicts, next) {
+		return errBlurredDictionary
+	}
+	if err := w.wr.Write(rec); err != nil {
+		return err
+	}
+	w.bad = false
+	if len(next) > 0 {
+		rec.Retain()
+		w.forget()
+		w.last, w.dicts = rec, next
+	}
+	return nil
+}
+
+// Close implements table.Writer.
+func (w *writer) Close() error {
+	w.forget()
+	if w.bad {
+		w.mute.off = true // arrow's writer gives its dictionaries back in Close only
+	}
+	return w.wr.Close()
+}
+
+func (w *writer) forget() {
+	if w.last != nil {
+		w.last.Release()
+		w.last, w.dicts = nil, nil
+	}
+}
+
+// mute passes bytes on until it is off.
+type mute struct {
+	w   io.Writer
+	off bool
+}
+
+func (m *mute) Write(b []byte) (int, error) {
+	if m.off {
+		return len(b), nil
+	}
+	return m.w.Write(b)
+}
+
+// dictionaries lists the dictionaries of a record batch, nested ones too, in a fixed order.
+func dictionaries(rec arrow.Record) []arrow.ArrayData {
+	var out []arrow.ArrayData
+	var visit func(d arrow.ArrayData)
+	visit = func(d arrow.ArrayData) {
+		if dict, ok := d.(*array.Data); ok && plain(d.DataType()).ID() == arrow.DICTIONARY {
+			out = append(out, dict.Dictionary())
+			visit(dict.Dictionary())
+		}
+		for _, c := range d.Children() {
+			visit(c)
+		}
+	}
+	for _, c := range rec.Columns() {
+		visit(c.Data())
+	}
+	return out
+}
+
+// blurred tells whether a dictionary differs from the one before by so little that arrow's writer would take them for
+// the same.
+func blurred(a, b []arrow.ArrayData) bool {
+	for i := range a {
+		if a[i] == b[i] {
+			continue
+		}
+		x, y := array.MakeFromData(a[i]), array.MakeFromData(b[i])
+		nan := array.WithNaNsEqual(true)
+		same := !array.ApproxEqual(x, y, nan, array.WithAbsTolerance(0)) && array.ApproxEqual(x, y, nan)
+		x.Release()
+		y.Release()
+		if same {
+			return true
+		}
+	}
+	return false
+}
+
+// plain is the storage type of an extension, else the type itself.
+func plain(dt arrow.DataType) arrow.DataType {
+	if ext, ok := dt.(arrow.ExtensionType); ok {
+		return ext.StorageType()
+	}
+	return dt
+}
