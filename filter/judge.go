@@ -1,7 +1,7 @@
 package filter
 
 import (
-	"sort"
+	"slices"
 	"sync"
 
 	"labelweir/model"
@@ -88,22 +88,37 @@ func (w *judge) run(j job) error {
 		w.fit, w.scorer = j.fit, j.fit.snapshot.NewScorer()
 	}
 	rows := j.fit.view.Rows
-	at := sort.Search(len(rows), func(i int) bool { return rows[i] >= j.first+int64(j.lo) })
-	for i := j.lo; i < j.hi; {
-		if at < len(rows) && rows[at] == j.first+int64(i) {
-			j.dst[i-j.lo] = j.fit.scores[at]
-			at++
-			i++
-			continue
+	begin, end := j.first+int64(j.lo), j.first+int64(j.hi)
+	at, _ := slices.BinarySearch(rows, begin)
+	known, _ := slices.BinarySearch(rows[at:], end)
+	trained, scores := rows[at:at+known], j.fit.scores[at:at+known]
+	// A scorer is quicker at many rows in a go than the few between two sampled ones, so that it judges some in vain.
+	var err error
+	if 2*known < j.hi-j.lo {
+		err = w.scorer.Score(j.table, j.lo, j.hi, j.dst)
+	} else {
+		err = w.between(j, trained)
+	}
+	for i, row := range trained {
+		j.dst[row-begin] = scores[i]
+	}
+	return err
+}
+
+// between judges the rows that were not trained on, run by run.
+func (w *judge) between(j job, trained []int64) error {
+	lo := j.lo
+	for k := 0; k <= len(trained); k++ {
+		hi := j.hi
+		if k < len(trained) {
+			hi = int(trained[k] - j.first)
 		}
-		end := j.hi
-		if at < len(rows) {
-			end = int(min(int64(end), rows[at]-j.first))
+		if lo < hi {
+			if err := w.scorer.Score(j.table, lo, hi, j.dst[lo-j.lo:hi-j.lo]); err != nil {
+				return err
+			}
 		}
-		if err := w.scorer.Score(j.table, i, end, j.dst[i-j.lo:end-j.lo]); err != nil {
-			return err
-		}
-		i = end
+		lo = hi + 1
 	}
 	return nil
 }
