@@ -67,16 +67,10 @@ func (f *Forest) Walk(bins []uint8, leaves []int32) {
 	}
 }
 
-// Vote writes to dst (len Classes) the mean class shares of the row's leaf ids over the trees that skip, if given, does
-// not leave out. With no tree left every class gets 1/Classes.
-func (f *Forest) Vote(leaves []int32, skip func(t int) bool, dst []float64) {
+// Vote writes to dst (len Classes) the mean class shares of the row's leaf ids over all trees.
+func (f *Forest) Vote(leaves []int32, dst []float64) {
 	clear(dst)
-	n := 0
 	for t, id := range leaves {
-		if skip != nil && skip(t) {
-			continue
-		}
-		n++
 		l := int(id - f.First[t])
 		share := f.Trees[t].Shares[l*f.Classes : (l+1)*f.Classes]
 		for c, s := range share {
@@ -84,22 +78,6 @@ func (f *Forest) Vote(leaves []int32, skip func(t int) bool, dst []float64) {
 		}
 	}
 	for c := range dst {
-		if n == 0 {
-			dst[c] = 1 / float64(f.Classes)
-		} else {
-			dst[c] /= float64(n)
-		}
+		dst[c] /= float64(len(leaves))
 	}
-}
-
-// bag is the share of rows a tree is grown on: that of the distinct rows in a bootstrap sample.
-const bag = 0.632
-
-// InBag tells whether a row with this key is in the bag of t, if it was there to be drawn when t was grown.
-func (t *Tree) InBag(key uint64) bool {
-	x := key ^ t.Seed
-	x = (x ^ x>>32) * 0xd6e8feb86659fd93
-	x = (x ^ x>>32) * 0xd6e8feb86659fd93
-	x ^= x >> 32
-	return float64(x>>11)/(1<<53) < bag
 }

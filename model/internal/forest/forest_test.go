@@ -190,7 +190,7 @@ func TestDrawnLabelsFollowTheirChances(t *testing.T) {
 	leaves, vote := make([]int32, 50), make([]float64, 3)
 	for at, want := range []float64{0, 0.25, 1} {
 		f.Walk(rows[100*at], leaves)
-		f.Vote(leaves, nil, vote)
+		f.Vote(leaves, vote)
 		if math.Abs(vote[0]-want) > 0.03 || vote[1] != 0 || math.Abs(vote[0]+vote[2]-1) > 1e-6 {
 			t.Errorf("vote %v of rows with a chance of %v", vote, want)
 		}
@@ -225,20 +225,58 @@ func TestBagHoldsItsShare(t *testing.T) {
 	}
 }
 
-func TestVoteSkipsTrees(t *testing.T) {
+func TestVoteIsTheMeanOfTheTrees(t *testing.T) {
 	f := New(2, []*Tree{
 		{Nodes: []Node{{Child: ^0}}, Shares: []float32{1, 0}},
 		{Nodes: []Node{{Child: ^0}}, Shares: []float32{0.5, 0.5}},
 		{Nodes: []Node{{Child: ^0}}, Shares: []float32{0, 1}},
+		{Nodes: []Node{{Child: ^0}}, Shares: []float32{0.75, 0.25}},
 	})
-	leaves, vote := []int32{0, 1, 2}, make([]float64, 2)
-	for _, c := range []struct {
-		skip func(int) bool
-		want float64
-	}{{nil, 0.5}, {func(t int) bool { return t == 2 }, 0.75}, {func(int) bool { return true }, 0.5}, {func(t int) bool { return t > 0 }, 1}} {
-		if f.Vote(leaves, c.skip, vote); vote[0] != c.want || vote[1] != 1-c.want {
-			t.Errorf("%v, wanted %v", vote, c.want)
+	vote := make([]float64, 2)
+	if f.Vote([]int32{0, 1, 2, 3}, vote); !slices.Equal(vote, []float64{0.5625, 0.4375}) {
+		t.Errorf("%v", vote)
+	}
+}
+
+// More rows than a block has, of which only some vote; rows that every tree was grown on are among them.
+func TestVoteOutOfBagIsTheMeanOfTheOtherTrees(t *testing.T) {
+	const n = 3*blockRows + 7
+	rng := rand.New(rand.NewPCG(2, 1))
+	var trees []*Tree
+	for range 4 {
+		trees = append(trees, &Tree{Shares: []float32{1, 0, 0.25, 0.75, 0.5, 0.5}, Seed: rng.Uint64()})
+	}
+	f := New(2, trees)
+	leaves := make([]int32, n*4)
+	for i := range leaves {
+		leaves[i] = f.First[i%4] + rng.Int32N(3)
+	}
+	var at []int32
+	var keys []uint64
+	for i := 0; i < n; i += 1 + i%2 {
+		at, keys = append(at, int32(i)), append(keys, key(i))
+	}
+	got, never := make([]float64, 2*len(at)), 0
+	f.VoteOutOfBag(leaves, at, keys, got)
+	for i, r := range at {
+		sum, count := 0.0, 0.0
+		for j, tree := range trees {
+			if !tree.InBag(keys[i]) {
+				sum, count = sum+float64(tree.Shares[2*(leaves[int(r)*4+j]-f.First[j])]), count+1
+			}
 		}
+		want := 0.5
+		if count > 0 {
+			want = sum / count
+		} else {
+			never++
+		}
+		if math.Abs(got[2*i]-want) > 1e-15 || math.Abs(got[2*i]+got[2*i+1]-1) > 1e-15 {
+			t.Fatalf("row %d: %v, wanted %v", r, got[2*i:2*i+2], want)
+		}
+	}
+	if never == 0 {
+		t.Error("no row is in every bag")
 	}
 }
 
@@ -248,10 +286,13 @@ func TestOutOfBagAccuracyOnWineIsThatOfScikitLearn(t *testing.T) {
 	b, labels := wine(t)
 	r := allRows(b, labels)
 	f := New(3, Grow(b, r, 3, 200, Options{MaxDepth: 30, MinLeaf: 1, Cuts: 1}, rand.New(rand.NewPCG(1, 1))))
-	leaves, vote, right := make([]int32, 200), make([]float64, 3), 0.0
+	leaves, votes, right := make([]int32, 200*b.N), make([]float64, 3*b.N), 0.0
 	for i := range b.N {
-		f.Walk(b.Row(i), leaves)
-		f.Vote(leaves, func(t int) bool { return f.Trees[t].InBag(r.Key[i]) }, vote)
+		f.Walk(b.Row(i), leaves[200*i:200*(i+1)])
+	}
+	f.VoteOutOfBag(leaves, r.At, r.Key, votes)
+	for i := range b.N {
+		vote := votes[3*i : 3*(i+1)]
 		if slices.Index(vote, slices.Max(vote)) == int(labels[i]) {
 			right++
 		}

@@ -83,37 +83,3 @@ func (s Steps) WalkTrees(roots *[Lanes]int32, bins []uint8, found *[Lanes]uint64
 		}
 	}
 }
-
-// Walker finds the leaves of many rows in one tree after the other. It is scratch and belongs to one goroutine.
-type Walker struct{ steps Steps }
-
-// Leaves writes into dst[i·stride] the leaf of t that row i of b falls into, plus first, for all rows.
-func (w *Walker) Leaves(t *Tree, b *Bins, first int32, dst []int32, stride int) {
-	w.steps = w.steps[:0]
-	for i, n := range t.Nodes {
-		if n.Child < 0 {
-			w.steps = append(w.steps, LeafAt(i, int(^n.Child)))
-		} else {
-			w.steps = append(w.steps, Split(int(n.Child), n.Feature, n.Cut))
-		}
-	}
-	i := 0
-	if len(w.steps) <= Reach {
-		nodes := len(w.steps)
-		if cap(w.steps) < Reach {
-			w.steps = append(make(Steps, 0, Reach), w.steps...)
-		}
-		w.steps = w.steps[:Reach]
-		var found [Lanes]uint64
-		for ; (i+Lanes)*b.D+Reach <= len(b.Rows); i += Lanes {
-			w.steps.WalkLanes(b.Rows[i*b.D:], b.D, &found)
-			for l, word := range found {
-				dst[(i+l)*stride] = first + LeafOf(word)
-			}
-		}
-		w.steps = w.steps[:nodes]
-	}
-	for ; i < b.N; i++ {
-		dst[i*stride] = first + LeafOf(w.steps.Walk(b.Row(i)))
-	}
-}

@@ -79,6 +79,10 @@ func (f *Fold) walk(which int, d *Data, first, count int) {
 	fo := forest.New(d.Classes, f.trees[which])
 	n, t := d.Rows(), len(fo.Trees)
 	out := make([]int32, n*t)
+	all := make([]int32, n)
+	for i := range all {
+		all[i] = int32(i)
+	}
 	if ids == nil || d.Old == nil {
 		first, count = 0, t
 	} else {
@@ -86,24 +90,31 @@ func (f *Fold) walk(which int, d *Data, first, count int) {
 		for j := range shift {
 			shift[j] = fo.First[j] - was.First[j]
 		}
+		var news []int32
 		for i, old := range d.Old {
-			row := out[i*t : (i+1)*t]
 			if old < 0 {
-				fo.Walk(d.Bins.Row(i), row)
+				news = append(news, int32(i))
 				continue
 			}
+			row := out[i*t : (i+1)*t]
 			for j, id := range ids[int(old)*t : int(old+1)*t] {
 				row[j] = id + shift[j]
 			}
 		}
+		walkTrees(fo, d.Bins, news, first+count, t-count, out)
 	}
-	// New trees one after the other, so that a tree's nodes stay in the cache.
-	var w forest.Walker
+	walkTrees(fo, d.Bins, all, first, count, out)
+	f.Forest[which], f.leaves[which] = fo, out
+}
+
+// walkTrees finds the leaf ids of some rows in count trees from first on, round the end: one tree after the other, so that
+// a tree's nodes stay in the cache.
+func walkTrees(fo *forest.Forest, b *forest.Bins, rows []int32, first, count int, out []int32) {
+	w, t := forest.NewWalker(b, rows), len(fo.Trees)
 	for i := range count {
 		j := (first + i) % t
-		w.Leaves(fo.Trees[j], d.Bins, fo.First[j], out[j:], t)
+		w.Leaves(fo.Trees[j], fo.First[j], out[j:], t)
 	}
-	f.Forest[which], f.leaves[which] = fo, out
 }
 
 // clean says how probable each class is for each training row, as the out-of-bag votes of the raw forest and a quick
@@ -118,13 +129,10 @@ func (f *Fold) clean(d *Data, rows forest.Rows) []float64 {
 			nd.Source[i] = d.Source[r]
 		}
 	}
-	fo := f.Forest[Raw]
-	t := len(fo.Trees)
-	for i, r := range rows.At {
-		dst := nd.Members[0][i*k : (i+1)*k]
-		key := rows.Key[i]
-		fo.Vote(f.leaves[Raw][int(r)*t:int(r+1)*t], func(t int) bool { return fo.Trees[t].InBag(key) }, dst)
-		logShares(dst, t)
+	fo, votes := f.Forest[Raw], nd.Members[0]
+	fo.VoteOutOfBag(f.leaves[Raw], rows.At, rows.Key, votes)
+	for i := range n {
+		logShares(votes[i*k:(i+1)*k], len(fo.Trees))
 	}
 	layer, _ := noise.Quick(nd)
 	chance := make([]float64, n*k)

@@ -49,7 +49,7 @@ func (f *Fold) Vote(which, i int, dst []float64) {
 
 // VoteScore writes the centred logarithms of a forest's vote.
 func VoteScore(f *forest.Forest, leaves []int32, dst []float64) {
-	f.Vote(leaves, nil, dst)
+	f.Vote(leaves, dst)
 	logShares(dst, len(f.Trees))
 }
 
