@@ -27,7 +27,7 @@ func Open(path string, rec filter.Record, opt table.Options) (*table.Source, err
 }
 
 func openReader(f table.File, opt table.ReadOptions) (table.Reader, error) {
-	return newReader(f, opt.Memory)
+	return newReader(f, opt)
 }
 
 func creator(format Format) func(io.Writer, *arrow.Schema, table.WriteOptions) (table.Writer, error) {

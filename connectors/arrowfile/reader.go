@@ -7,7 +7,6 @@ import (
 
 	"github.com/apache/arrow/go/v16/arrow"
 	"github.com/apache/arrow/go/v16/arrow/ipc"
-	"github.com/apache/arrow/go/v16/arrow/memory"
 
 	"labelweir/connectors/table"
 )
@@ -15,6 +14,7 @@ import (
 // reader reads an open file, one record batch after the other. It implements table.Reader.
 type reader struct {
 	path string
+	opt  table.ReadOptions
 	msgs *messages
 	rd   *ipc.Reader
 
@@ -22,8 +22,8 @@ type reader struct {
 }
 
 // newReader reads the schema of a file.
-func newReader(f table.File, mem memory.Allocator) (r *reader, err error) {
-	r = &reader{path: f.Path}
+func newReader(f table.File, opt table.ReadOptions) (r *reader, err error) {
+	r = &reader{path: f.Path, opt: opt}
 	if r.msgs, err = newMessages(f, f.Size); err != nil {
 		if errors.Is(err, errNotArrow) {
 			return nil, &table.Error{Path: f.Path, What: "is neither an Arrow IPC file nor an Arrow IPC stream",
@@ -31,7 +31,7 @@ func newReader(f table.File, mem memory.Allocator) (r *reader, err error) {
 		}
 		return nil, r.damaged("its layout can't be read", err)
 	}
-	if r.rd, err = ipc.NewReaderFromMessageReader(r.msgs, ipc.WithAllocator(capped{mem, mostBytes(f.Size)})); err != nil {
+	if r.rd, err = ipc.NewReaderFromMessageReader(r.msgs, ipc.WithAllocator(capped{opt.Memory, mostBytes(f.Size)})); err != nil {
 		r.msgs.Release()
 		return nil, r.damaged("its schema can't be read", err)
 	}
@@ -74,6 +74,7 @@ func (r *reader) Next() (rec arrow.Record, err error) {
 			rec, err = nil, r.damaged("its bytes make no sense", table.Caught(p))
 		}
 	}()
+	r.opt.Tell(table.Place{Path: r.path, Batch: r.msgs.batch + 1}, "")
 	if !r.rd.Next() {
 		if err := r.rd.Err(); err != nil {
 			return nil, r.damaged("the record batch can't be read", err)

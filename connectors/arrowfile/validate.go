@@ -16,6 +16,7 @@ import (
 func (r *reader) validate(rec arrow.Record) error {
 	r.lastDicts, r.dicts = r.dicts, map[arrow.ArrayData]bool{}
 	for i, col := range rec.Columns() {
+		r.opt.Tell(r.Place(), rec.ColumnName(i))
 		if err := r.validateData(col.Data()); err != nil {
 			e := r.damaged("its values can't be read", err).(*table.Error)
 			e.Column = rec.ColumnName(i)

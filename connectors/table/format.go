@@ -79,8 +79,18 @@ type ReadOptions struct {
 	Delimiter byte
 	// MostRow is the most bytes that one row may have, above 0. Only for formats of text.
 	MostRow int
+	// Mark, if set, is told before a record batch is read where it stands, and before each column of it where that is
+	// known, so that it can still be said when reading ends the process.
+	Mark func(at Place, column string)
 	// Memory gives out the record batches; never nil.
 	Memory memory.Allocator
+}
+
+// Tell calls Mark if it is set.
+func (o *ReadOptions) Tell(at Place, column string) {
+	if o.Mark != nil {
+		o.Mark(at, column)
+	}
 }
 
 // WriteOptions are what a Writer is created with.

@@ -17,6 +17,8 @@ type Options struct {
 	MostRow    int                    // most bytes of one row of text; default 64 MiB
 	Unreadable func(Unreadable) error // takes rows that can't be read, in order; nil: the first is an error
 
+	Mark func(at Place, column string) // see ReadOptions.Mark
+
 	OutFormat string // name of the outputs' format; empty: from their names, else the input's
 	Replace   bool   // write over targets that exist; default false
 

@@ -195,6 +195,7 @@ func (s *Source) batch(part arrow.Record) (b *filter.Batch, err error) {
 	for i := range t.Keys {
 		t.Keys[i] = model.Key(s.row + int64(i))
 	}
+	s.mark(s.plan.label)
 	if t.Labels, err = s.codes(s.labels, part, s.plan.label); err != nil {
 		return nil, err
 	}
@@ -206,6 +207,7 @@ func (s *Source) batch(part arrow.Record) (b *filter.Batch, err error) {
 		t.SourceNames = s.sources.list()
 	}
 	for i := range s.plan.features {
+		s.mark(s.plan.features[i].index)
 		if t.Columns[i], err = s.column(i, part); err != nil {
 			return nil, err
 		}
@@ -223,6 +225,13 @@ func (s *Source) batch(part arrow.Record) (b *filter.Batch, err error) {
 		}
 	}
 	return b, nil
+}
+
+// mark tells which column is read now.
+func (s *Source) mark(index int) {
+	if s.opt.Mark != nil {
+		s.opt.Mark(s.in.place(), s.names[index])
+	}
 }
 
 // column reads one feature.

@@ -50,6 +50,10 @@ func Settings() []Setting {
 	return []Setting{
 		setting("input.file.path", "", "FILE", "Arrow file to read; sweep's argument says the same",
 			func(c *Config) *string { return &c.Input.File }, parseName, formatName),
+		setting("input.trust", "trust", "", "read the file in the process itself, not in a guarded one",
+			func(c *Config) *bool { return &c.Input.Trust }, parseSwitch, formatSwitch),
+		setting("input.memory", "memory", "SIZE", "most memory of the guarded process; auto: 2GiB and six times window.bytes",
+			func(c *Config) *int64 { return &c.Input.Memory }, parseMemory, formatMemory),
 		setting("record.label", "label", "COLUMN", "column of the observed label",
 			func(c *Config) *string { return &c.Record.Label }, parseName, formatName),
 		setting("record.source", "source", "COLUMN", "column that tells who or what labelled the record",

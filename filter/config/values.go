@@ -101,6 +101,34 @@ func parseSize(s string) (int64, error) {
 	return n * unit, nil
 }
 
+// auto is written for a size that follows from others.
+const auto = "auto"
+
+// leastMemory is what the smallest sweep needs, and some room.
+const leastMemory = 256 << 20
+
+// parseMemory reads a size or auto, which is 0.
+func parseMemory(s string) (int64, error) {
+	if s == auto {
+		return 0, nil
+	}
+	n, err := parseSize(s)
+	if err != nil {
+		return 0, fmt.Errorf("%w, or auto", err)
+	}
+	if n < leastMemory {
+		return 0, fmt.Errorf("%q is too little for any sweep; write %s or more", s, formatSize(leastMemory))
+	}
+	return n, nil
+}
+
+func formatMemory(n int64) string {
+	if n == 0 {
+		return auto
+	}
+	return formatSize(n)
+}
+
 func sizeUnit(name string) (int64, bool) {
 	switch name {
 	case "B":
