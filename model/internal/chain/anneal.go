@@ -34,7 +34,7 @@ func Annealed(p *Problem, q float64, from *State, opt AnnealOptions, rng *rand.R
 	s.load(p, rng)
 	start := 1.
 	if from != nil {
-		s.restore(from)
+		s.restore(from.Start())
 		start = s.measure(q)
 	}
 	s.remember(s.measure(q))

@@ -110,8 +110,7 @@ func BenchmarkWarm(b *testing.B) {
 	defer measureCPU(b)()
 	var warm State
 	for b.Loop() {
-		from := Carry(p, -.5, &old, index, nil, s)
-		warm = Warm(p, -.5, &from, 5, newRand(2), s)
+		warm = Warm(p, -.5, Carry(&old, index, nil), 5, newRand(2), s)
 	}
 	b.ReportMetric(warm.J/cold.J, "J/cold")
 }

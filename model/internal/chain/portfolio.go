@@ -43,9 +43,9 @@ type Run struct {
 }
 
 // Portfolio makes several runs for one q and returns them in the order made, with the index of the one to use: the
-// best, or the warm one within the hysteresis of it. from is the running state by the rows of p (see Carry), nil for a
-// cold start.
-func Portfolio(p *Problem, q float64, from *State, opt PortfolioOptions, rng *rand.Rand, s *Scratch) (runs []Run, use int) {
+// best, or the warm one within the hysteresis of it. from is where the warm run begins (see Carry), nil for a cold
+// start.
+func Portfolio(p *Problem, q float64, from *Start, opt PortfolioOptions, rng *rand.Rand, s *Scratch) (runs []Run, use int) {
 	best, running := 0, -1
 	add := func(name string, st State) {
 		runs = append(runs, Run{name, st})

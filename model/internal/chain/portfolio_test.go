@@ -90,11 +90,10 @@ func judge(t *testing.T, c *tally, setting string, n, d int, flip, q float64, se
 		share, other = .5, true
 	}
 	before, p, index := after(n, d, flip, share, other, seed)
-	var from *State
+	var from *Start
 	if setting != "cold" {
 		old := Graduated(before, nil, []float64{q}, newRand(1), s)[0]
-		st := Carry(p, q, &old, index, nil, s)
-		from = &st
+		from = Carry(&old, index, nil)
 	}
 	opt := DefaultPortfolio(n)
 	opt.Hysteresis = 0

@@ -1,6 +1,9 @@
 package chain
 
-import "math/rand/v2"
+import (
+	"fmt"
+	"math/rand/v2"
+)
 
 // Scratch is the working memory of runs. Its zero value is ready; reuse saves allocation. It belongs to one goroutine.
 //
@@ -155,7 +158,10 @@ func (s *Scratch) state(q, j float64, collapsed bool, status Status) State {
 }
 
 // restore takes α and flags from st and rebuilds the weights from them.
-func (s *Scratch) restore(st *State) {
+func (s *Scratch) restore(st *Start) {
+	if len(st.Alpha) != s.n || len(st.Keep) != s.n || st.New != nil && len(st.New) != s.n {
+		panic(fmt.Sprintf("chain: start of %d rows for %d", len(st.Alpha), s.n))
+	}
 	clear(s.w)
 	for i, k := range s.perm {
 		s.keep[i], s.alpha[i] = st.Keep[k], 0

@@ -1,7 +1,6 @@
 package chain
 
 import (
-	"fmt"
 	"math"
 	"math/rand/v2"
 )
@@ -16,12 +15,9 @@ import (
 // O(hops·epochs·rows·(Dense+Trees)).
 func Shaken(p *Problem, q float64, from *State, hops int, rng *rand.Rand, s *Scratch) State {
 	const last, fine, hot = 20, 1e-3, 3e-3
-	if len(from.Alpha) != len(p.Rows) || len(from.Keep) != len(p.Rows) {
-		panic(fmt.Sprintf("chain: state of %d rows for %d", len(from.Alpha), len(p.Rows)))
-	}
 	blurs := [...]float64{3, 1, .3, .1}
 	s.load(p, rng)
-	s.restore(from)
+	s.restore(from.Start())
 	start := s.measure(q)
 	s.note(&s.here, start)
 	s.note(&s.top, start)

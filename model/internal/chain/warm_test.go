@@ -26,19 +26,17 @@ func TestWarmNeverRaisesTheObjective(t *testing.T) {
 	for _, q := range []float64{-1, -.5, 0} {
 		cold := Graduated(p, nil, []float64{q}, newRand(1), s)[0]
 		next, index := slide(all, 100, 2100, 0, 2000)
-		from := Carry(next, q, &cold, index, nil, s)
-		if got := objective(next, q, from.W); math.Abs(got-from.J) > 1e-9 {
-			t.Errorf("q=%v: carried J=%v, from its weights %v", q, from.J, got)
-		}
-		warm := Warm(next, q, &from, 5, newRand(2), s)
+		from := Carry(&cold, index, nil)
+		carried := objective(next, q, weights(next, from.Alpha))
+		warm := Warm(next, q, from, 5, newRand(2), s)
 		again := Graduated(next, nil, []float64{q}, newRand(3), s)[0]
 		if got := objective(next, q, warm.W); math.Abs(got-warm.J) > 1e-9 {
 			t.Errorf("q=%v: warm J=%v, from its weights %v", q, warm.J, got)
 		}
-		if warm.J > from.J || warm.J > again.J*1.005 {
-			t.Errorf("q=%v: J carried %v, warm %v, cold %v", q, from.J, warm.J, again.J)
+		if warm.J > carried || warm.J > again.J*1.005 {
+			t.Errorf("q=%v: J carried %v, warm %v, cold %v", q, carried, warm.J, again.J)
 		}
-		t.Logf("q=%v carried %.6f warm %.6f (%d epochs) cold %.6f (%d)", q, from.J, warm.J, warm.Epochs, again.J, again.Epochs)
+		t.Logf("q=%v carried %.6f warm %.6f (%d epochs) cold %.6f (%d)", q, carried, warm.J, warm.Epochs, again.J, again.Epochs)
 	}
 }
 
@@ -47,9 +45,9 @@ func TestWarmFromAnOptimumStaysThere(t *testing.T) {
 	s := &Scratch{}
 	st := Graduated(p, nil, []float64{-.5}, newRand(1), s)[0]
 	for range 30 {
-		st = Warm(p, -.5, &st, 40, newRand(2), s)
+		st = Warm(p, -.5, st.Start(), 40, newRand(2), s)
 	}
-	if again := Warm(p, -.5, &st, 5, newRand(3), s); again.J > st.J+1e-12 || again.J < st.J-1e-6 {
+	if again := Warm(p, -.5, st.Start(), 5, newRand(3), s); again.J > st.J+1e-12 || again.J < st.J-1e-6 {
 		t.Errorf("J %v after the optimum's %v", again.J, st.J)
 	}
 }
@@ -68,7 +66,63 @@ func TestCarryTreatsARelabelledRowAsNew(t *testing.T) {
 		}
 	}
 	changed[pulling] = true
-	if got := Carry(p, -.5, &st, index, changed, s).Alpha[pulling]; got != 0 {
-		t.Errorf("α of a relabelled row is %v, want 0", got)
+	start := Carry(&st, index, changed)
+	if !start.New[pulling] || start.Alpha[pulling] != 0 {
+		t.Errorf("a relabelled row has α %v and is new: %v", start.Alpha[pulling], start.New[pulling])
 	}
+}
+
+// weights are Σ αᵢyᵢxᵢ, by definition.
+func weights(p *Problem, alpha []float64) []float64 {
+	w := make([]float64, p.Columns())
+	for k, r := range p.Rows {
+		t := alpha[k] * float64(p.Y[k])
+		for c, v := range p.X[int(r)*p.Dense : int(r+1)*p.Dense] {
+			w[c] += t * float64(v)
+		}
+		for _, c := range p.Leaves[int(r)*p.Trees : int(r+1)*p.Trees] {
+			w[p.Dense+int(c)] += t * p.LeafValue
+		}
+	}
+	return w
+}
+
+// A run that may hardly move keeps or drops a new row by its margin, and a known one as it came.
+func TestNewRowsTakeTheFlagOfTheirMargin(t *testing.T) {
+	all, _ := linear(1100, 10, 12, 16, .25, newRand(11))
+	p, _ := slide(all, 0, 1000, 0, 0)
+	s := &Scratch{}
+	cold := Graduated(p, nil, []float64{-.5}, newRand(1), s)[0]
+	next, index := slide(all, 100, 1100, 0, 1000)
+	from := Carry(&cold, index, nil)
+	w, kept, dropped := weights(next, from.Alpha), 0, 0
+	s.load(next, newRand(2))
+	s.begin(-.5, from)
+	for i, k := range s.perm {
+		want := from.Keep[k]
+		if index[k] < 0 {
+			only := &Problem{Design: next.Design, Rows: next.Rows[k : k+1], Y: next.Y[k : k+1], Omega: []float64{1}, Lambda: 1e-300}
+			if want = objective(only, math.Inf(-1), w) < 1.5*1.5; want {
+				kept++
+			} else {
+				dropped++
+			}
+		}
+		if s.keep[i] != want {
+			t.Errorf("row %d: kept %v, wanted %v", k, s.keep[i], want)
+		}
+	}
+	if kept == 0 || dropped == 0 {
+		t.Errorf("%d new rows kept, %d dropped", kept, dropped)
+	}
+}
+
+func TestStartsOfOtherProblemsAreRefused(t *testing.T) {
+	p, _ := linear(50, 3, 0, 0, .1, newRand(4))
+	defer func() {
+		if recover() == nil {
+			t.Error("a start of too few rows was taken")
+		}
+	}()
+	Warm(p, -.5, &Start{Alpha: make([]float64, 49), Keep: make([]bool, 49)}, 5, newRand(1), &Scratch{})
 }

@@ -67,7 +67,7 @@ func (f *Fold) Solve(d *Data, design int, lambda float64, qs []float64, o chain.
 		}
 		r := run{design, lambda, ab[0], ab[1]}
 		states := f.solve(d, p, f.runs[r], qs, o, &tally, rng, s)
-		f.runs[r] = keep(f.train, p, qs, states)
+		f.runs[r] = keep(p, qs, states)
 		for j := range qs {
 			out[j].Pairs = append(out[j].Pairs, Pair{A: ab[0], B: ab[1], W: states[j].W})
 		}
@@ -90,11 +90,8 @@ func (f *Fold) Forget(but []Setting) {
 }
 
 // keep remembers states by the rows of the data.
-func keep(train []int32, p *chain.Problem, qs []float64, states []chain.State) *done {
-	o := &done{rows: make([]int32, len(p.Rows)), labels: p.Y, states: make(map[float64]*chain.State)}
-	for i, r := range p.Rows {
-		o.rows[i] = train[r]
-	}
+func keep(p *chain.Problem, qs []float64, states []chain.State) *done {
+	o := &done{rows: p.Rows, labels: p.Y, states: make(map[float64]*chain.State)}
 	for j, q := range qs {
 		o.states[q] = &states[j]
 	}
@@ -121,17 +118,16 @@ func (f *Fold) solve(d *Data, p *chain.Problem, last *done, qs []float64, o chai
 	var index []int32
 	var changed []bool
 	if d.Old != nil && last != nil {
-		index, changed = carried(d, f.train, p, last)
+		index, changed = carried(d, p, last)
 	} else if o.Anneals == 0 && o.Hops == 0 {
 		*tally = AddTally(*tally, []Tally{{Name: chain.NameGraduated, Tried: len(qs), Won: len(qs)}})
 		return chain.Graduated(p, path, qs, rng, s)
 	}
 	out := make([]chain.State, len(qs))
 	for j, q := range qs {
-		var from *chain.State
+		var from *chain.Start
 		if index != nil && last.states[q] != nil {
-			st := chain.Carry(p, q, last.states[q], index, changed, s)
-			from = &st
+			from = chain.Carry(last.states[q], index, changed)
 		}
 		runs, use := chain.Portfolio(p, q, from, o, rng, s)
 		out[j] = runs[use].State
@@ -155,7 +151,7 @@ func tallied(runs []chain.Run) []Tally {
 }
 
 // carried finds, for each row of p, its entry in the problem solved before.
-func carried(d *Data, train []int32, p *chain.Problem, last *done) (index []int32, changed []bool) {
+func carried(d *Data, p *chain.Problem, last *done) (index []int32, changed []bool) {
 	top := int32(-1)
 	for _, r := range last.rows {
 		top = max(top, r)
@@ -170,7 +166,7 @@ func carried(d *Data, train []int32, p *chain.Problem, last *done) (index []int3
 	index, changed = make([]int32, len(p.Rows)), make([]bool, len(p.Rows))
 	for i, r := range p.Rows {
 		index[i] = -1
-		old := d.Old[train[r]]
+		old := d.Old[r]
 		if old < 0 || old > top || at[old] < 0 {
 			continue
 		}
@@ -180,28 +176,27 @@ func carried(d *Data, train []int32, p *chain.Problem, last *done) (index []int3
 	return index, changed
 }
 
-// matrix is the design matrix of the training rows.
+// matrix is the design matrix of all rows.
 func (f *Fold) matrix(d *Data, des *Design) *chain.Design {
-	n, x, wide := len(f.train), d.X, d.Dense
+	n := d.Rows()
+	m := &chain.Design{N: n, Dense: d.Dense, X: d.X}
 	if des.Kernel > 0 {
-		x, wide = d.Smooth[des.Kernel-1], d.Kernels[des.Kernel-1].Size()+1
+		m.Dense, m.X = d.Kernels[des.Kernel-1].Size()+1, d.Smooth[des.Kernel-1]
 	}
-	m := &chain.Design{N: n, Dense: wide, X: make([]float32, n*wide)}
-	for i, r := range f.train {
-		dst, src := m.X[i*wide:(i+1)*wide], x[int(r)*wide:int(r+1)*wide]
-		for j, v := range src {
-			dst[j] = v * float32(des.Number)
+	if des.Number != 1 {
+		scaled := make([]float32, len(m.X))
+		for i, v := range m.X {
+			scaled[i] = v * float32(des.Number)
 		}
-		dst[wide-1] = 1
+		for i := m.Dense - 1; i < len(scaled); i += m.Dense {
+			scaled[i] = 1
+		}
+		m.X = scaled
 	}
 	if des.Leaf > 0 {
-		fo, ids := f.Forest[Cleaned], f.leaves[Cleaned]
-		t := len(fo.Trees)
-		m.Trees, m.LeafCols, m.LeafValue = t, fo.Leaves(), des.Leaf/math.Sqrt(float64(t))
-		m.Leaves = make([]int32, n*t)
-		for i, r := range f.train {
-			copy(m.Leaves[i*t:(i+1)*t], ids[int(r)*t:int(r+1)*t])
-		}
+		fo := f.Forest[Cleaned]
+		m.Trees, m.LeafCols, m.Leaves = len(fo.Trees), fo.Leaves(), f.leaves[Cleaned]
+		m.LeafValue = des.Leaf / math.Sqrt(float64(m.Trees))
 	}
 	return m
 }
@@ -211,13 +206,13 @@ func (f *Fold) matrix(d *Data, des *Design) *chain.Design {
 func (f *Fold) pair(d *Data, m *chain.Design, a, b int, lambda float64) *chain.Problem {
 	p := &chain.Problem{Design: m, Lambda: lambda}
 	na, nb := 0, 0
-	for i, r := range f.train {
+	for _, r := range f.train {
 		switch d.Labels[r] {
 		case int32(a):
-			p.Rows, p.Y = append(p.Rows, int32(i)), append(p.Y, 1)
+			p.Rows, p.Y = append(p.Rows, r), append(p.Y, 1)
 			na++
 		case int32(b):
-			p.Rows, p.Y = append(p.Rows, int32(i)), append(p.Y, -1)
+			p.Rows, p.Y = append(p.Rows, r), append(p.Y, -1)
 			nb++
 		}
 	}
