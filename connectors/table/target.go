@@ -46,7 +46,7 @@ func newTarget(d disk.FS, path string, replace bool) (*target, error) {
 		return nil, err
 	}
 	for n := 0; ; n++ {
-		t.temp = filepath.Join(dir, fmt.Sprintf(".%s.part-%d-%d", filepath.Base(path), os.Getpid(), n))
+		t.temp = partName(path, os.Getpid(), n)
 		if t.file, err = d.Create(t.temp); err == nil {
 			t.open = true
 			return t, nil

@@ -61,12 +61,15 @@ func code(ctx context.Context, err error) int {
 		}
 		return exitFailed
 	}
+	var said *passed
 	var f *failure
 	var a *argv.Error
 	var faults config.Faults
 	switch {
 	case err == nil:
 		return 0
+	case errors.As(err, &said):
+		return said.code
 	case errors.As(err, &f):
 		return f.code
 	case errors.As(err, &a):
@@ -99,6 +102,9 @@ func faultCode(faults config.Faults) int {
 func say(ctx context.Context, p *process, err error) {
 	if s, ok := bySignal(ctx, err); ok {
 		fmt.Fprintf(p.err, "labelweir: %v; no output was written\n", s)
+		return
+	}
+	if said := (*passed)(nil); errors.As(err, &said) {
 		return
 	}
 	for line := range strings.Lines(strings.TrimRight(err.Error(), "\n")) {

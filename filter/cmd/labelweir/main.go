@@ -4,11 +4,14 @@ package main
 
 import (
 	"context"
+	"fmt"
 	"io"
 	"os"
 	"os/signal"
 	"syscall"
+	"time"
 
+	"labelweir/filter/cmd/labelweir/internal/guard"
 	"labelweir/filter/cmd/labelweir/internal/term"
 )
 
@@ -17,6 +20,12 @@ func main() { os.Exit(start()) }
 // start runs the command on the process's own streams until it ends or a signal stops it, and gives the exit code.
 func start() int {
 	limitAsError()
+	child, err := guard.Join()
+	if err != nil {
+		fmt.Fprintf(os.Stderr, "labelweir: %v\n", err)
+		return exitFailed
+	}
+	p := &process{out: &output{w: os.Stdout}, environ: os.Environ, args: os.Args}
 	ctx, stop := context.WithCancelCause(context.Background())
 	defer stop(nil)
 	signals := make(chan os.Signal, 1) // one is enough to stop; a second one while stopping changes nothing
@@ -29,12 +38,21 @@ func start() int {
 		case <-ctx.Done():
 		}
 	}()
-	return run(ctx, &process{
-		out:      &output{w: os.Stdout},
-		err:      os.Stderr,
-		terminal: term.Is(os.Stderr),
-		environ:  os.Environ,
-	}, os.Args[1:])
+	people := os.Stderr
+	if child != nil {
+		people, p.marks, p.args = child.Err, child.Marks, nil
+		go orphaned(child, stop) // ends with the process
+	}
+	p.err, p.terminal = people, term.Is(people)
+	return run(ctx, p, os.Args[1:])
+}
+
+// orphaned stops a child whose parent is gone, first in the way a signal does, so that it leaves no half file.
+func orphaned(child *guard.Child, stop func(error)) {
+	<-child.Orphan
+	stop(stopped{syscall.SIGTERM})
+	time.Sleep(grace)
+	os.Exit(exitFailed)
 }
 
 // process is what a command sees of the outside.
@@ -43,6 +61,8 @@ type process struct {
 	err      io.Writer // everything a person reads
 	terminal bool      // err is a terminal
 	environ  func() []string
+	args     []string     // to start this program again with, its own name first; nil: what runs is the child already
+	marks    *guard.Marks // in a child: where it is; else nil
 }
 
 // output is standard output; it keeps the first error, so that it need not be looked at after every line.

@@ -11,6 +11,7 @@ import (
 	"labelweir/connectors/table"
 	"labelweir/filter"
 	"labelweir/filter/cmd/labelweir/internal/argv"
+	"labelweir/filter/cmd/labelweir/internal/guard"
 	"labelweir/filter/cmd/labelweir/internal/sweep"
 	"labelweir/filter/cmd/labelweir/internal/term"
 	"labelweir/filter/config"
@@ -58,6 +59,9 @@ func runSweep(ctx context.Context, p *process, args []string) error {
 	if err != nil {
 		return err
 	}
+	if guard.Supported && p.args != nil && !c.Input.Trust {
+		return guarded(p, c)
+	}
 	var bar *term.Bar
 	if p.terminal {
 		bar = term.NewBar(p.err, time.Now)
@@ -65,6 +69,7 @@ func runSweep(ctx context.Context, p *process, args []string) error {
 	report, err := sweep.Run(ctx, c, sweep.Watch{
 		Chosen:   func(choice []table.Choice) { tellChoice(p, choice) },
 		Progress: bar.Show,
+		Marks:    p.marks,
 	})
 	bar.Clear()
 	if err != nil {

@@ -13,17 +13,18 @@ type Cause uint8
 
 // The causes.
 const (
-	OfMemory Cause = iota + 1 // it wanted more than the limit
-	OfStack                   // its stack grew beyond the limit
-	OfHang                    // it got nowhere and was killed
-	OfSignal                  // a signal that was not ours
-	OfPanic                   // anything else that ends a Go program
+	OfMemory   Cause = iota + 1 // it wanted more than the limit
+	OfStack                     // its stack grew beyond the limit
+	OfHang                      // it got nowhere and was killed
+	OfSignal                    // a signal that was not ours
+	OfDeafness                  // our kill, after a passed-on signal that it did not obey
+	OfPanic                     // anything else that ends a Go program
 )
 
 // Death tells how a child ended that did not end by itself.
 type Death struct {
 	Cause  Cause
-	Signal os.Signal     // OfSignal
+	Signal os.Signal     // OfSignal, OfDeafness
 	Text   string        // OfPanic: the first line of what the runtime said
 	Trace  []byte        // all of it, as far as it was kept
 	After  time.Duration // OfHang: how long it got nowhere
@@ -39,6 +40,8 @@ func (d *Death) How() string {
 		return "overflowed its stack"
 	case OfHang:
 		return fmt.Sprintf("made no headway in %v of computing", d.After)
+	case OfDeafness:
+		return "did not stop on a signal: " + d.Signal.String()
 	case OfSignal:
 		return "was ended by a signal: " + d.Signal.String()
 	}

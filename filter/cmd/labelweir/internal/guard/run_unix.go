@@ -32,8 +32,7 @@ const tick = 100 * time.Millisecond
 
 // Run starts this program again as a child and waits until it has ended. Standard input and output are the child's as
 // they are; SIGINT and SIGTERM are passed on, and a second one ends it at once. It returns the child's exit code and a
-// nil Death when the child ended by itself; when it was stopped by a passed-on signal it did not obey, 128 and the
-// signal's number. The error says that no child could be started.
+// nil Death when the child ended by itself. The error says that no child could be started.
 func Run(c Command) (code int, pid int, d *Death, err error) {
 	// The child's death signal is bound to the thread that started it.
 	runtime.LockOSThread()
@@ -161,8 +160,7 @@ func (w *watch) verdict(s *os.ProcessState, words []byte, err error) (code int, 
 	case w.hung:
 		d.Cause, d.After = OfHang, w.command.Hang
 	case w.killed:
-		n, _ := w.passed.(syscall.Signal)
-		return 128 + int(n), nil, nil
+		d.Cause, d.Signal = OfDeafness, w.passed
 	case status.Signaled():
 		d.Cause, d.Signal = OfSignal, status.Signal()
 	case spoken && s.ExitCode() == 2: // the code of a Go program that dies

@@ -11,6 +11,7 @@ import (
 	"labelweir/connectors/arrowfile"
 	"labelweir/connectors/table"
 	"labelweir/filter"
+	"labelweir/filter/cmd/labelweir/internal/guard"
 	"labelweir/filter/config"
 )
 
@@ -18,6 +19,7 @@ import (
 type Watch struct {
 	Chosen   func([]table.Choice)                  // once, when the columns are known and the outputs can be created
 	Progress func(phase string, done, total int64) // from one goroutine at a time
+	Marks    *guard.Marks                          // where the sweep is, for who outlives it
 	Now      func() time.Time                      // clock of the report's times; nil: time.Now
 }
 
@@ -27,7 +29,10 @@ type Watch struct {
 func Run(ctx context.Context, c *config.Config, w Watch) (*filter.Report, error) {
 	options := table.DefaultOptions()
 	options.Replace = c.Output.Replace
+	options.Mark = marker(w.Marks)
+	w.Marks.Enter(c.Input.File)
 	first, err := open(ctx, c, options)
+	w.Marks.Leave()
 	if err != nil {
 		return nil, err
 	}
@@ -54,10 +59,17 @@ func Run(ctx context.Context, c *config.Config, w Watch) (*filter.Report, error)
 	}
 	var last filter.Snapshot
 	s := filter.Sweep{
-		Config:     c.Filter,
-		Open:       func(context.Context) (filter.Source, error) { return arrowfile.Open(c.Input.File, record, options) },
-		Sink:       sink,
-		Progress:   w.Progress,
+		Config: c.Filter,
+		Open: func(context.Context) (filter.Source, error) {
+			return openMarked(w.Marks, c.Input.File, func() (filter.Source, error) { return arrowfile.Open(c.Input.File, record, options) })
+		},
+		Sink: sink,
+		Progress: func(phase string, done, total int64) {
+			w.Marks.Phase(phase)
+			if w.Progress != nil {
+				w.Progress(phase, done, total)
+			}
+		},
 		OnSnapshot: func(s filter.Snapshot) { last = s },
 		Now:        w.Now,
 	}
