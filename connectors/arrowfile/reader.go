@@ -8,6 +8,7 @@ import (
 	"github.com/apache/arrow/go/v16/arrow"
 	"github.com/apache/arrow/go/v16/arrow/ipc"
 
+	"labelweir/connectors/internal/capped"
 	"labelweir/connectors/table"
 )
 
@@ -31,7 +32,7 @@ func newReader(f table.File, opt table.ReadOptions) (r *reader, err error) {
 		}
 		return nil, r.damaged("its layout can't be read", err)
 	}
-	if r.rd, err = ipc.NewReaderFromMessageReader(r.msgs, ipc.WithAllocator(capped{opt.Memory, mostBytes(f.Size)})); err != nil {
+	if r.rd, err = ipc.NewReaderFromMessageReader(r.msgs, ipc.WithAllocator(capped.New(opt.Memory, f.Size))); err != nil {
 		r.msgs.Release()
 		return nil, r.damaged("its schema can't be read", err)
 	}
