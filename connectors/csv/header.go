@@ -1,0 +1,182 @@
+package csv
+
+import (
+	"bytes"
+	"fmt"
+	"strings"
+	"unicode/utf8"
+
+	"github.com/apache/arrow/go/v16/arrow"
+
+	"labelweir/connectors/internal/cell"
+	"labelweir/connectors/table"
+)
+
+// header is what the first row and those used to infer the types tell about a file.
+type header struct {
+	manner
+	names []string
+	types []arrow.DataType // utf8, binary where the first cells are no UTF-8, or a *table.CellType
+	end   int64            // where the first row behind it begins
+	line  int64            // and its line
+}
+
+// readHeader reads the header and, unless like tells all types, looks at the first rows.
+func readHeader(f table.File, opt table.ReadOptions) (*header, error) {
+	r := newRows(f, opt.Delimiter, opt.MostRow)
+	if f.Size > 0 {
+		if err := r.feed.More(); err != nil {
+			return nil, r.fault("can't be read", "", err)
+		}
+	}
+	text := r.feed.Window()
+	if what := foreign(text); what != "" {
+		return nil, r.fault(what, "convert it to CSV text in UTF-8 first", nil)
+	}
+	mark := 0
+	if bytes.HasPrefix(text, []byte(byteOrderMark)) {
+		mark = len(byteOrderMark)
+		r.feed.Skip(mark)
+	}
+	if r.delimiter == 0 {
+		r.delimiter = sniff(text[mark:], r.feed.Ended())
+	}
+	h := &header{manner: manner{delimiter: r.delimiter}}
+	if err := h.first(r); err != nil {
+		return nil, err
+	}
+	h.manner.header = append([]byte(byteOrderMark)[:mark], h.manner.header...)
+	return h, h.infer(r, opt)
+}
+
+// first takes the header's row.
+func (h *header) first(r *rows) error {
+	ok, err := r.next()
+	switch {
+	case err != nil:
+		return err
+	case !ok:
+		return r.fault("has no rows, not even a header", "check the step that wrote it", nil)
+	case r.reason != "":
+		return r.fault("the header "+r.reason, "write the names of the columns into the first row", nil)
+	case r.row.Count > mostColumns:
+		return r.fault(fmt.Sprintf("the header has %d cells, more than %d", r.row.Count, mostColumns), "check that "+quoted(r.delimiter)+" is its delimiter", nil)
+	}
+	for i := range r.row.Cells {
+		name := r.cell(i)
+		if r.row.Cells[i].Doubled {
+			name = undouble(nil, name)
+		}
+		if !utf8.Valid(name) {
+			return r.fault(fmt.Sprintf("the name of column %d is not UTF-8 text", i+1), "convert the file to UTF-8", nil)
+		}
+		h.names = append(h.names, string(name))
+	}
+	h.header = bytes.Clone(r.text[:r.row.Text])
+	h.newline = "\n"
+	if bytes.HasSuffix(r.text, []byte("\r\n")) {
+		h.newline = "\r\n"
+	}
+	h.end, h.line, r.columns = r.at+int64(r.row.Next), r.beyond, r.row.Count
+	return nil
+}
+
+// peekBytes bounds the text looked at for the types.
+const peekBytes = 64 << 20
+
+// infer sets the types: those of like for the columns that it has, those that the first rows allow for the others.
+func (h *header) infer(r *rows, opt table.ReadOptions) error {
+	h.types = make([]arrow.DataType, len(h.names))
+	known := likes(h.names, opt.Like)
+	open := false
+	for i, dt := range known {
+		h.types[i] = dt
+		open = open || dt == nil
+	}
+	if !open {
+		return nil
+	}
+	guesses, foreign := make([]cell.Guess, len(h.names)), make([]bool, len(h.names))
+	for left := opt.Peek; left > 0 && r.feed.Offset() < h.end+peekBytes; {
+		ok, err := r.next()
+		if err != nil {
+			return err
+		}
+		if !ok {
+			break
+		}
+		if r.reason != "" {
+			continue
+		}
+		left--
+		for i := range guesses {
+			if h.types[i] == nil {
+				guesses[i].Watch(r.cell(i))
+				foreign[i] = foreign[i] || !utf8.Valid(r.cell(i))
+			}
+		}
+	}
+	for i := range guesses {
+		if h.types[i] == nil {
+			h.types[i] = typeOf(guesses[i].Type(), foreign[i])
+		}
+	}
+	return nil
+}
+
+func typeOf(means arrow.DataType, foreign bool) arrow.DataType {
+	switch {
+	case means != nil:
+		return table.NewCellType(means)
+	case foreign:
+		return arrow.BinaryTypes.Binary
+	}
+	return arrow.BinaryTypes.String
+}
+
+// likes gives for each name the type of the column of that name in like, nil when there is none that CSV can have; the
+// k-th column of a repeated name goes with the k-th there.
+func likes(names []string, like *arrow.Schema) []arrow.DataType {
+	out := make([]arrow.DataType, len(names))
+	if like == nil {
+		return out
+	}
+	met := map[string]int{}
+	for i, name := range names {
+		found := like.FieldIndices(name)
+		k := met[name]
+		met[name]++
+		if k >= len(found) || found[k] == table.RawIndex(like) {
+			continue
+		}
+		switch dt := like.Field(found[k]).Type; dt.(type) {
+		case *table.CellType, *arrow.StringType, *arrow.BinaryType:
+			out[i] = dt
+		}
+	}
+	return out
+}
+
+// schema is the schema of the record batches: the columns and the hidden one.
+func (h *header) schema(rawDelimiter byte) *arrow.Schema {
+	var fields []arrow.Field
+	for i, name := range h.names {
+		fields = append(fields, arrow.Field{Name: name, Type: h.types[i], Nullable: true})
+	}
+	raw := table.RawField(formatName)
+	raw.Nullable = true
+	raw.Metadata = arrow.NewMetadata(append(raw.Metadata.Keys(), delimiterKey), append(raw.Metadata.Values(), string(rune(rawDelimiter))))
+	return arrow.NewSchema(append(fields, raw), nil)
+}
+
+// mustBeText tells for each column whether its cells must be UTF-8: whether text names it, perhaps with "#2" and so on
+// behind a name that is repeated.
+func mustBeText(names, text []string) []bool {
+	out := make([]bool, len(names))
+	for i, name := range names {
+		for _, t := range text {
+			out[i] = out[i] || t == name || strings.HasPrefix(t, name+"#")
+		}
+	}
+	return out
+}
