@@ -14,7 +14,7 @@ import (
 
 	"github.com/apache/arrow/go/v16/arrow/memory"
 
-	"labelweir/connectors/internal/disk"
+	"labelweir/connectors/disk"
 	"labelweir/connectors/table"
 	"labelweir/filter"
 	"labelweir/model"

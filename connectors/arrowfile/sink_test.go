@@ -10,7 +10,7 @@ import (
 	"syscall"
 	"testing"
 
-	"labelweir/connectors/internal/disk"
+	"labelweir/connectors/disk"
 	"labelweir/connectors/table"
 	"labelweir/filter"
 )

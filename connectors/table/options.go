@@ -3,7 +3,7 @@ package table
 import (
 	"github.com/apache/arrow/go/v16/arrow/memory"
 
-	"labelweir/connectors/internal/disk"
+	"labelweir/connectors/disk"
 )
 
 // Options of reading and writing.

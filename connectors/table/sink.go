@@ -8,7 +8,7 @@ import (
 
 	"github.com/apache/arrow/go/v16/arrow"
 
-	"labelweir/connectors/internal/disk"
+	"labelweir/connectors/disk"
 	"labelweir/filter"
 )
 

@@ -8,7 +8,7 @@ import (
 	"path/filepath"
 	"syscall"
 
-	"labelweir/connectors/internal/disk"
+	"labelweir/connectors/disk"
 )
 
 // OutputPaths are the files that a Sink writes.
