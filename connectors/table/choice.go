@@ -65,11 +65,13 @@ func infer(names []string, schema *arrow.Schema, parts map[int]string, habits []
 
 // judge gives a feature's kind, or 0 and the reason for leaving the column out. A used column may have a remark.
 func judge(f arrow.Field, h habit) (model.Kind, string) {
-	kind, why := kindOf(plain(f.Type))
+	kind, why := kindOf(meant(f.Type))
 	if kind == 0 {
 		return 0, why
 	}
 	switch {
+	case f.Metadata.FindKey(RawKey) >= 0:
+		return 0, "the bytes of the row"
 	case IsTag(f.Name):
 		return 0, "a tag of an earlier run"
 	case h.rows > 0 && h.valid == 0:

@@ -14,7 +14,8 @@ import (
 // Input is one file of the input. It must be a regular file: it may be read several times.
 type Input struct {
 	Path  string
-	Title string // what messages call it; empty: Path
+	Title string   // what messages call it; empty: Path
+	File  *os.File // what to read when it is open already; it stays open. Nil: the file at Path
 }
 
 func (in Input) title() string {
@@ -49,7 +50,11 @@ func openInput(files []Input, text []string, like *arrow.Schema, opt Options) (*
 		return nil, &Error{Path: "input", What: "no file is named", Do: "name one", Kind: ErrUnreadable}
 	}
 	for _, f := range files {
-		if info, err := os.Stat(f.Path); err == nil {
+		stat := func() (fs.FileInfo, error) { return os.Stat(f.Path) }
+		if f.File != nil {
+			stat = f.File.Stat
+		}
+		if info, err := stat(); err == nil {
 			in.size += info.Size()
 		}
 	}
@@ -63,15 +68,17 @@ func openInput(files []Input, text []string, like *arrow.Schema, opt Options) (*
 // open opens the file at.
 func (in *input) open() (err error) {
 	at := in.files[in.at]
-	file, err := os.Open(at.Path)
-	if err != nil {
-		return cantOpen(at.title(), err)
-	}
-	defer func() {
-		if err != nil {
-			file.Close()
+	file := at.File
+	if file == nil {
+		if file, err = os.Open(at.Path); err != nil {
+			return cantOpen(at.title(), err)
 		}
-	}()
+		defer func() {
+			if err != nil {
+				file.Close()
+			}
+		}()
+	}
 	size, err := sizeOfFile(file, at.title())
 	if err != nil {
 		return err
@@ -230,7 +237,10 @@ func (in *input) close() error {
 	if in.rd == nil {
 		return nil
 	}
-	err := errors.Join(in.rd.Close(), in.file.Close())
+	err := in.rd.Close()
+	if in.file != in.files[in.at].File {
+		err = errors.Join(err, in.file.Close())
+	}
 	in.rd = nil
 	return err
 }

@@ -70,6 +70,9 @@ func appendNumbers(dst []float64, arr arrow.Array) ([]float64, error) {
 	case *array.Dictionary:
 		return appendIndexed(dst, a)
 	case array.ExtensionArray:
+		if c, means, ok := cellsOf(a); ok {
+			return appendCellNumbers(dst, c, means)
+		}
 		return appendNumbers(dst, a.Storage())
 	default:
 		return dst, fmt.Errorf("no number can be read from %s", arr.DataType())

@@ -1,6 +1,8 @@
 package table
 
 import (
+	"io"
+
 	"github.com/apache/arrow/go/v16/arrow/memory"
 
 	"labelweir/connectors/disk"
@@ -19,8 +21,9 @@ type Options struct {
 
 	Mark func(at Place, column string) // see ReadOptions.Mark
 
-	OutFormat string // name of the outputs' format; empty: from their names, else the input's
-	Replace   bool   // write over targets that exist; default false
+	OutFormat string    // name of the outputs' format; empty: from their names, else the input's
+	Pipe      io.Writer // takes what is written to the path "-"; nil: nothing may be
+	Replace   bool      // write over targets that exist; default false
 
 	BlockRows  int64 // most rows of a record batch written; default 16384
 	BlockBytes int64 // most bytes of one, if it has several rows; default 32 MiB

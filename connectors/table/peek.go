@@ -65,7 +65,7 @@ func (h *habit) watch(arr arrow.Array) {
 		h.valid = 0
 	}
 	h.watchNames(arr)
-	if h.counting = h.counting && arrow.IsInteger(arr.DataType().ID()) && arr.NullN() == 0; !h.counting {
+	if h.counting = h.counting && arrow.IsInteger(meant(arr.DataType()).ID()) && arr.NullN() == 0; !h.counting {
 		return
 	}
 	vals, _ := appendNumbers(nil, arr)
@@ -80,7 +80,7 @@ func (h *habit) watch(arr arrow.Array) {
 
 // watchNames counts the distinct values of integers and text.
 func (h *habit) watchNames(arr arrow.Array) {
-	dt := plain(arr.DataType())
+	dt := meant(arr.DataType())
 	if d, ok := dt.(*arrow.DictionaryType); ok {
 		dt = plain(d.ValueType)
 	}

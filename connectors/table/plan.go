@@ -2,6 +2,7 @@ package table
 
 import (
 	"fmt"
+	"slices"
 	"strings"
 
 	"github.com/apache/arrow/go/v16/arrow"
@@ -92,13 +93,13 @@ func (p *planner) nameable(part string, i int) error {
 
 // timed refuses types that don't say which moment a value means.
 func (p *planner) timed(i int) error {
-	if i < 0 || isTime(plain(p.schema.Field(i).Type)) {
+	if i < 0 || isTime(meant(p.schema.Field(i).Type)) {
 		return nil
 	}
 	dt := p.schema.Field(i).Type
 	e := &Error{Path: p.path, Column: p.names[i], What: fmt.Sprintf("values of type %s can't be the time", dt),
 		Do: "use a timestamp or a date", Kind: ErrColumn}
-	if arrow.IsInteger(plain(dt).ID()) {
+	if arrow.IsInteger(meant(dt).ID()) {
 		e.What = fmt.Sprintf("values of type %s don't tell their unit, so they can't be the time", dt)
 		e.Do = `cast it to a timestamp first (pyarrow: column.cast(pyarrow.timestamp("s")) when it counts seconds)`
 	}
@@ -131,7 +132,7 @@ func (p *planner) features(rec filter.Record, pl *plan) error {
 
 // feature checks one field against its column; kind and size are filled in when they are not given.
 func (p *planner) feature(i int, f filter.Field) (feature, error) {
-	dt := plain(p.schema.Field(i).Type)
+	dt := meant(p.schema.Field(i).Type)
 	usual, why := kindOf(dt)
 	if f.Kind == 0 {
 		f.Kind = usual
@@ -174,14 +175,18 @@ func (p *planner) feature(i int, f filter.Field) (feature, error) {
 
 // list names the columns, at most 30.
 func (p *planner) list() string {
-	if len(p.names) == 0 {
+	names := p.names
+	if raw := RawIndex(p.schema); raw >= 0 {
+		names = slices.Delete(slices.Clone(names), raw, raw+1)
+	}
+	if len(names) == 0 {
 		return "(none)"
 	}
 	const most = 30
-	if len(p.names) <= most {
-		return strings.Join(p.names, ", ")
+	if len(names) <= most {
+		return strings.Join(names, ", ")
 	}
-	return fmt.Sprintf("%s and %d more", strings.Join(p.names[:most], ", "), len(p.names)-most)
+	return fmt.Sprintf("%s and %d more", strings.Join(names[:most], ", "), len(names)-most)
 }
 
 func indexOf(names []string, name string) int {

@@ -21,3 +21,11 @@ func RawIndex(schema *arrow.Schema) int {
 	}
 	return -1
 }
+
+// shown is how many columns of a schema are not hidden.
+func shown(schema *arrow.Schema) int {
+	if RawIndex(schema) >= 0 {
+		return schema.NumFields() - 1
+	}
+	return schema.NumFields()
+}

@@ -5,6 +5,7 @@ import (
 	"errors"
 	"fmt"
 	"path/filepath"
+	"slices"
 
 	"github.com/apache/arrow/go/v16/arrow"
 
@@ -24,6 +25,8 @@ type Sink struct {
 	next   int64   // number of the record that must come next
 	err    error   // sticky
 	state  sinkState
+
+	finished bool // everything is on the disk
 
 	toTagged, toHeld []run // scratch
 }
@@ -60,8 +63,6 @@ func Create(out OutputPaths, src *Source, opt Options) (*Sink, error) {
 	if err := distinct(d, src.in.files, out); err != nil {
 		return nil, err
 	}
-	meta := schema.Metadata()
-	full := arrow.NewSchema(append(schema.Fields(), tagFields()...), &meta)
 	s := &Sink{disk: d, schema: schema}
 	for _, o := range []struct {
 		path string
@@ -70,9 +71,9 @@ func Create(out OutputPaths, src *Source, opt Options) (*Sink, error) {
 		if o.path == "" {
 			continue
 		}
-		t, err := newTarget(d, o.path, opt.Replace)
+		t, err := openTarget(d, o.path, opt)
 		if err == nil {
-			*o.to, err = newOutput(t, src, full, opt)
+			*o.to, err = newOutput(t, src, opt)
 		}
 		if err != nil {
 			return nil, errors.Join(err, s.Close())
@@ -169,36 +170,71 @@ func fenced(o *output, do func() error) (err error) {
 	return do()
 }
 
-// Commit implements filter.Sink. When it fails, the final names are as they were, except that a file replaced on
-// request stays replaced.
-func (s *Sink) Commit(ctx context.Context) error {
-	if err := s.usable(ctx); err != nil {
+// Finish writes what is left and brings it to the disk, under no final name yet. No Deliver may follow.
+func (s *Sink) Finish(ctx context.Context) error {
+	if err := s.usable(ctx); err != nil || s.finished {
 		return err
 	}
-	outs := s.outputs()
-	for _, o := range outs {
+	for _, o := range s.outputs() {
 		if s.err = fenced(o, o.finish); s.err != nil {
 			return s.err
 		}
 	}
-	if s.err = s.place(outs); s.err != nil {
+	s.finished = true
+	return nil
+}
+
+// Commit implements filter.Sink. When it fails, the final names are as they were, except that a file replaced on
+// request stays replaced.
+func (s *Sink) Commit(ctx context.Context) error { return s.CommitWith(ctx) }
+
+// CommitWith commits together with other targets, which are filled and get their names first. When it fails, neither
+// these, once they are dropped, nor what the sink wrote stands under a name that it did not replace.
+func (s *Sink) CommitWith(ctx context.Context, others ...*Target) error {
+	if err := s.Finish(ctx); err != nil {
+		return err
+	}
+	var all []*Target
+	for _, t := range others {
+		if t != nil {
+			all = append(all, t)
+		}
+	}
+	for _, o := range slices.Backward(s.outputs()) { // tagged records must not seem complete without the quarantine
+		all = append(all, o.target)
+	}
+	if s.err = s.place(all); s.err != nil {
 		return s.err
 	}
 	s.state = sinkDone
 	return nil
 }
 
-// place gives the files their names, the quarantine first: tagged records must not seem complete without it.
-func (s *Sink) place(outs []*output) error {
-	for i := len(outs) - 1; i >= 0; i-- {
-		if err := outs[i].target.place(); err != nil {
+// place gives the files their names, once all names can be had.
+func (s *Sink) place(all []*Target) error {
+	for _, t := range all {
+		if t.pipe {
+			continue
+		}
+		if err := t.free(); err != nil {
 			return err
 		}
 	}
-	for _, o := range outs {
-		if err := s.disk.SyncDir(filepath.Dir(o.target.path)); err != nil {
-			return o.target.fault("its folder can't be brought to the disk", ErrWrite, err)
+	for _, t := range all {
+		if err := t.place(); err != nil {
+			return err
 		}
+	}
+	for _, t := range all {
+		if t.pipe {
+			continue
+		}
+		if err := s.disk.SyncDir(filepath.Dir(t.path)); err != nil {
+			return t.fault("its folder can't be brought to the disk", ErrWrite, err)
+		}
+	}
+	for _, t := range all {
+		t.kept = true
 	}
 	return nil
 }
@@ -211,7 +247,7 @@ func (s *Sink) Close() error {
 	var errs []error
 	for _, o := range s.outputs() {
 		if s.state != sinkDone {
-			errs = append(errs, o.target.drop())
+			errs = append(errs, o.target.Drop())
 		}
 		o.release()
 	}

@@ -4,6 +4,7 @@ import (
 	"context"
 	"errors"
 	"fmt"
+	"slices"
 	"sync/atomic"
 
 	"github.com/apache/arrow/go/v16/arrow"
@@ -61,7 +62,7 @@ func Open(files []Input, rec filter.Record, opt Options) (src *Source, err error
 		return nil, err
 	}
 	if len(pl.features) == 0 {
-		return nil, &Error{Path: p.path, What: fmt.Sprintf("none of its %d columns can be a field", len(choice)),
+		return nil, &Error{Path: p.path, What: fmt.Sprintf("none of its %d columns can be a field", shown(p.schema)),
 			Do: "name the fields, or add columns of numbers, text or vectors", Kind: ErrColumn}
 	}
 	src = &Source{in: in, opt: opt, rec: rec, plan: pl, names: names, choice: choice,
@@ -127,7 +128,13 @@ func choose(p *planner, rec filter.Record, pl plan, opt Options) ([]Choice, erro
 }
 
 // Choice tells, column by column, what is used as what and why.
-func (s *Source) Choice() []Choice { return append([]Choice(nil), s.choice...) }
+func (s *Source) Choice() []Choice {
+	out := slices.Clone(s.choice)
+	if raw := RawIndex(s.in.schema); raw >= 0 {
+		out = slices.Delete(out, raw, raw+1)
+	}
+	return out
+}
 
 // Record is the record as read, with its fields written out: opening the same or a like file with it reads the same
 // columns.

@@ -1,8 +1,10 @@
 package table
 
 import (
+	"bufio"
 	"errors"
 	"fmt"
+	"io"
 	"io/fs"
 	"os"
 	"path/filepath"
@@ -17,8 +19,9 @@ type OutputPaths struct {
 	Quarantine string // records held back; empty: none may be
 }
 
-// target is a file to be: written under a temporary name beside the final one.
-type target struct {
+// Target is a file to be: written under a temporary name beside the final one, which it gets when it is whole. The nil
+// Target is a file not wanted: it takes what it is told and does nothing.
+type Target struct {
 	disk    disk.FS
 	path    string // the final name
 	temp    string
@@ -27,11 +30,41 @@ type target struct {
 	existed bool
 	open    bool // file is open
 	placed  bool // the final name is taken
+	kept    bool // it stays there
+	pipe    bool // bytes go on at once: there is no name to take
 }
 
-// newTarget checks path and creates the temporary file.
-func newTarget(d disk.FS, path string, replace bool) (*target, error) {
-	t := &target{disk: d, path: path, replace: replace}
+// Pipe is the path that stands for standard output.
+const Pipe = "-"
+
+// openTarget begins the output of a path.
+func openTarget(d disk.FS, path string, opt Options) (*Target, error) {
+	if path != Pipe {
+		return newTarget(d, path, opt.Replace)
+	}
+	if opt.Pipe == nil {
+		return nil, &Error{Path: path, What: "there is no pipe to write into", Do: "name a file", Kind: ErrTarget}
+	}
+	return &Target{disk: d, path: "standard output", file: pipeFile{opt.Pipe}, pipe: true}, nil
+}
+
+// pipeFile is a pipe as a file being written.
+type pipeFile struct{ io.Writer }
+
+func (pipeFile) Sync() error  { return nil }
+func (pipeFile) Close() error { return nil }
+
+// NewTarget checks path and creates the temporary file, on opt.Disk; path "" gives nil. Errors wrap ErrTarget.
+func NewTarget(path string, opt Options) (*Target, error) {
+	if path == "" {
+		return nil, nil
+	}
+	opt = opt.filled()
+	return newTarget(opt.Disk, path, opt.Replace)
+}
+
+func newTarget(d disk.FS, path string, replace bool) (*Target, error) {
+	t := &Target{disk: d, path: path, replace: replace}
 	dir := filepath.Dir(path)
 	info, err := d.Stat(dir)
 	switch {
@@ -58,7 +91,7 @@ func newTarget(d disk.FS, path string, replace bool) (*target, error) {
 }
 
 // free tells whether the final name may be taken.
-func (t *target) free() error {
+func (t *Target) free() error {
 	info, err := t.disk.Stat(t.path)
 	switch {
 	case errors.Is(err, fs.ErrNotExist):
@@ -76,7 +109,7 @@ func (t *target) free() error {
 }
 
 // sync brings the bytes to the disk and closes the file.
-func (t *target) sync() error {
+func (t *Target) sync() error {
 	err := t.file.Sync()
 	t.open = false
 	if e := t.file.Close(); err == nil {
@@ -86,7 +119,10 @@ func (t *target) sync() error {
 }
 
 // place gives the file its final name.
-func (t *target) place() error {
+func (t *Target) place() error {
+	if t.pipe {
+		return nil
+	}
 	if err := t.free(); err != nil { // it may have come to be meanwhile
 		return err
 	}
@@ -97,8 +133,31 @@ func (t *target) place() error {
 	return nil
 }
 
-// drop removes what there is: the temporary file, or the final one when it replaced nothing.
-func (t *target) drop() error {
+// Fill writes the whole content through write, and brings it to the disk. Errors wrap ErrWrite.
+func (t *Target) Fill(write func(io.Writer) error) error {
+	if t == nil {
+		return nil
+	}
+	buf := bufio.NewWriterSize(t.file, 1<<16)
+	err := write(buf)
+	if err == nil {
+		err = buf.Flush()
+	}
+	if err == nil {
+		err = t.sync()
+	}
+	if err != nil {
+		return t.fault("can't be written", ErrWrite, err)
+	}
+	return nil
+}
+
+// Drop removes what there is: the temporary file, or the final one when it replaced nothing. After the commit of the
+// sink that it was committed with, it does nothing.
+func (t *Target) Drop() error {
+	if t == nil || t.kept || t.pipe {
+		return nil
+	}
 	if t.open {
 		t.open = false
 		_ = t.file.Close() // what it holds goes anyway
@@ -117,7 +176,7 @@ func (t *target) drop() error {
 }
 
 // fault is an error about this target, with advice for the causes that can be told apart.
-func (t *target) fault(what string, kind, err error) error {
+func (t *Target) fault(what string, kind, err error) error {
 	var own *Error
 	if errors.As(err, &own) {
 		if own.Path == "" { // writers know no names
@@ -135,6 +194,8 @@ func (t *target) fault(what string, kind, err error) error {
 		e.Do = "the quota is used up: make room or write elsewhere"
 	case errors.Is(err, syscall.EFBIG):
 		e.Do = "the largest file size is reached: raise the limit or write elsewhere"
+	case errors.Is(err, fs.ErrNotExist):
+		e.Do = "its folder was removed or moved meanwhile: run again into one that stays"
 	case errors.Is(err, fs.ErrPermission):
 		e.Do = "check the permissions of its folder"
 	case errors.Is(err, syscall.EROFS):
@@ -156,7 +217,10 @@ func bare(err error) error {
 
 // distinct tells whether input and outputs are different files, links resolved.
 func distinct(d disk.FS, inputs []Input, out OutputPaths) error {
-	if out.Quarantine != "" && resolved(out.Tagged) == resolved(out.Quarantine) {
+	if out.Quarantine == Pipe {
+		return &Error{Path: Pipe, What: "only tagged records can go into a pipe", Do: "name a file for the quarantine", Kind: ErrTarget}
+	}
+	if out.Quarantine != "" && out.Tagged != Pipe && resolved(out.Tagged) == resolved(out.Quarantine) {
 		return &Error{Path: out.Quarantine, What: "is both the tagged output and the quarantine", Do: "name two files", Kind: ErrTarget}
 	}
 	for _, in := range inputs {
@@ -174,14 +238,14 @@ func apart(d disk.FS, input string, out OutputPaths) error {
 		return nil // the input is open; its name may be gone
 	}
 	for _, path := range []string{out.Tagged, out.Quarantine} {
-		if path == "" {
+		if path == "" || path == Pipe {
 			continue
 		}
 		info, err := d.Stat(path)
 		switch {
 		case errors.Is(err, fs.ErrNotExist), errors.Is(err, syscall.ENOTDIR): // more about that in newTarget
 		case err != nil:
-			return (&target{path: path}).fault("can't be looked at", ErrTarget, err)
+			return (&Target{path: path}).fault("can't be looked at", ErrTarget, err)
 		case os.SameFile(in, info):
 			return &Error{Path: path, What: "is the input", Do: "name another output", Kind: ErrTarget}
 		}

@@ -31,6 +31,9 @@ func appendTimes(dst []int64, arr arrow.Array) ([]int64, error) {
 	case *array.Date64:
 		dst = scaled(dst, a.Date64Values(), 1e6)
 	case array.ExtensionArray:
+		if c, _, ok := cellsOf(a); ok {
+			return appendCellTimes(dst, c), nil
+		}
 		return appendTimes(dst, a.Storage())
 	default:
 		return dst, fmt.Errorf("no moment can be read from %s", arr.DataType())
