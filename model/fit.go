@@ -271,7 +271,7 @@ func (f *fitting) warm(ctx context.Context, stage uint64, last *noise.Layer) (*n
 	if err := f.grow(ctx, stage<<2); err != nil {
 		return nil, nil, err
 	}
-	o := chain.PortfolioOptions{WarmEpochs: 5, Hysteresis: 1e-3}
+	o := chain.PortfolioOptions{WarmEpochs: 3, Hysteresis: 1e-3}
 	err := f.each(ctx, "chains", stage<<2|1, f.folds, func(fold *learn.Fold, rng *rand.Rand, s *chain.Scratch) {
 		for _, m := range f.plan {
 			if m.forest < 0 {

@@ -59,6 +59,22 @@ func dotDense(x []float32, w []float64) float64 {
 	return (a + b) + (c + d)
 }
 
+// squares32 is Σ x², in four sums as well.
+func squares32(x []float32) float64 {
+	var a, b, c, d float64
+	for len(x) >= 4 {
+		a += float64(x[0]) * float64(x[0])
+		b += float64(x[1]) * float64(x[1])
+		c += float64(x[2]) * float64(x[2])
+		d += float64(x[3]) * float64(x[3])
+		x = x[4:]
+	}
+	for _, v := range x {
+		a += float64(v) * float64(v)
+	}
+	return (a + b) + (c + d)
+}
+
 // sumThin is Σ w[c] over the columns c.
 func sumThin(l []uint16, w *[narrow]float64) float64 {
 	var a, b, c, d, e, f, g, h float64

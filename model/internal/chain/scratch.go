@@ -109,10 +109,7 @@ func (s *Scratch) pack(p *Problem, i, k int) {
 	r := int(p.Rows[k])
 	x := s.x[i*s.dense : (i+1)*s.dense]
 	copy(x, p.X[r*p.Dense:(r+1)*p.Dense])
-	norm := float64(p.Trees) * p.LeafValue * p.LeafValue
-	for _, v := range x {
-		norm += float64(v) * float64(v)
-	}
+	norm := float64(p.Trees)*p.LeafValue*p.LeafValue + squares32(x)
 	from, shift := p.Leaves[r*p.Trees:(r+1)*p.Trees], int32(s.dense)
 	if s.thin != nil {
 		to := s.thin[i*s.trees:][:len(from)]

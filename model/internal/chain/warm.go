@@ -7,9 +7,13 @@ import (
 	"labelweir/model/internal/loss"
 )
 
-// heldEpochs is how long a warm run holds the flags it came with. Rows that left took their α out of w, so margins are
-// off at first; flags renewed on them fall towards the solution that drops everything.
-const heldEpochs = 4
+// heldEpochs is the longest and held the largest projected gradient, in units of the margin, until which a warm run holds
+// the flags it came with. Rows that left took their α out of w, so margins are off at first; flags renewed on them fall
+// towards the solution that drops everything.
+const (
+	heldEpochs = 4
+	held       = 0.2
+)
 
 // Start is where a warm run begins, by the rows of its problem: α, flags, and which rows take the flag that their margin
 // asks for at first; New may be nil. A dropped row's α does not count.
@@ -39,15 +43,15 @@ func Carry(from *State, index []int32, changed []bool) *Start {
 	return st
 }
 
-// Warm continues from a start: it rebuilds the weights, holds the flags for four epochs, then renews them as the graduated
-// run does, for epochs epochs in all (at least 5). The result is the point of the lowest J met, so never above the J of the
+// Warm continues from a start: it rebuilds the weights, holds the flags while these follow, up to four epochs, then renews
+// them as the graduated run does, for so many epochs in all, at least one of them after the flags were held. The result is the point of the lowest J met, so never above the J of the
 // start; its Status is NoProgress if that is the start itself.
 func Warm(p *Problem, q float64, from *Start, epochs int, rng *rand.Rand, s *Scratch) State {
 	const tolerance = 1e-2
 	s.load(p, rng)
 	start := s.begin(q, from)
 	s.remember(start)
-	_, used := s.ascend(heldEpochs, tolerance, rng)
+	_, used := s.ascend(heldEpochs, held, rng)
 	s.consider(s.measure(q))
 	status := s.cycle(Stage{Q: q, Tolerance: tolerance}, max(1, epochs-used), rng)
 	if s.best.j >= start {
