@@ -2,6 +2,7 @@ package table
 
 import (
 	"bufio"
+	"slices"
 
 	"github.com/apache/arrow/go/v16/arrow"
 	"github.com/apache/arrow/go/v16/arrow/array"
@@ -14,7 +15,8 @@ import (
 type output struct {
 	target *Target
 	format *Format
-	schema *arrow.Schema
+	conv   *conversion   // nil: rows are written as they are
+	schema *arrow.Schema // with the tags
 	opt    Options
 
 	pieces     []arrow.Record
@@ -29,18 +31,30 @@ type output struct {
 }
 
 // newOutput begins a file; when it fails, the target is still to be dropped.
-func newOutput(t *Target, src *Source, schema *arrow.Schema, opt Options) (*output, error) {
-	o := &output{target: t, schema: schema, opt: opt, tags: newTagColumns(opt.Memory), buf: bufio.NewWriterSize(t.file, 1<<18)}
+func newOutput(t *Target, src *Source, opt Options) (*output, error) {
+	o := &output{target: t, opt: opt, tags: newTagColumns(opt.Memory), buf: bufio.NewWriterSize(t.file, 1<<18)}
 	var err error
 	if o.format, err = outFormat(t.path, src.in.format, opt); err != nil {
 		return o, err
 	}
+	if t.pipe && !o.format.Pipe {
+		return o, &Error{Path: t.path, What: o.format.Title + " can't be written into a pipe", Do: "name another format for the output, or a file", Kind: ErrTarget}
+	}
+	if o.conv, err = newConversion(src, o.format); err != nil {
+		return o, err
+	}
+	base := src.in.schema
+	if o.conv != nil {
+		base = o.conv.schema
+	}
+	meta := base.Metadata()
+	o.schema = arrow.NewSchema(append(slices.Clone(base.Fields()), tagFields()...), &meta)
 	how := WriteOptions{Memory: opt.Memory}
 	if o.format.Name == src.in.format.Name {
 		how.Manner = src.in.manner()
 	}
 	return o, fenced(o, func() error {
-		o.wr, err = o.format.Create(o.buf, schema, how)
+		o.wr, err = o.format.Create(o.buf, o.schema, how)
 		return err
 	})
 }
@@ -130,12 +144,16 @@ func (o *output) flush() error {
 		return err
 	}
 	defer rec.Release()
-	tags := o.tags.take()
-	cols := append(append([]arrow.Array(nil), rec.Columns()...), tags...)
-	full := array.NewRecord(o.schema, cols, o.rows)
+	own := o.tags.take() // the columns that are no longer needed when the record batch has them
+	cols := append([]arrow.Array(nil), rec.Columns()...)
+	if o.conv != nil {
+		cols = o.conv.apply(rec, o.opt.Memory)
+		own = append(own, cols...)
+	}
+	full := array.NewRecord(o.schema, append(cols, own[:len(TagNames())]...), o.rows)
 	defer full.Release()
-	for _, t := range tags {
-		t.Release()
+	for _, c := range own {
+		c.Release()
 	}
 	if err := o.wr.Write(full); err != nil {
 		return err

@@ -63,8 +63,6 @@ func Create(out OutputPaths, src *Source, opt Options) (*Sink, error) {
 	if err := distinct(d, src.in.files, out); err != nil {
 		return nil, err
 	}
-	meta := schema.Metadata()
-	full := arrow.NewSchema(append(schema.Fields(), tagFields()...), &meta)
 	s := &Sink{disk: d, schema: schema}
 	for _, o := range []struct {
 		path string
@@ -73,9 +71,9 @@ func Create(out OutputPaths, src *Source, opt Options) (*Sink, error) {
 		if o.path == "" {
 			continue
 		}
-		t, err := newTarget(d, o.path, opt.Replace)
+		t, err := openTarget(d, o.path, opt)
 		if err == nil {
-			*o.to, err = newOutput(t, src, full, opt)
+			*o.to, err = newOutput(t, src, opt)
 		}
 		if err != nil {
 			return nil, errors.Join(err, s.Close())
@@ -215,6 +213,9 @@ func (s *Sink) CommitWith(ctx context.Context, others ...*Target) error {
 // place gives the files their names, once all names can be had.
 func (s *Sink) place(all []*Target) error {
 	for _, t := range all {
+		if t.pipe {
+			continue
+		}
 		if err := t.free(); err != nil {
 			return err
 		}
@@ -225,6 +226,9 @@ func (s *Sink) place(all []*Target) error {
 		}
 	}
 	for _, t := range all {
+		if t.pipe {
+			continue
+		}
 		if err := s.disk.SyncDir(filepath.Dir(t.path)); err != nil {
 			return t.fault("its folder can't be brought to the disk", ErrWrite, err)
 		}

@@ -31,7 +31,28 @@ type Target struct {
 	open    bool // file is open
 	placed  bool // the final name is taken
 	kept    bool // it stays there
+	pipe    bool // bytes go on at once: there is no name to take
 }
+
+// Pipe is the path that stands for standard output.
+const Pipe = "-"
+
+// openTarget begins the output of a path.
+func openTarget(d disk.FS, path string, opt Options) (*Target, error) {
+	if path != Pipe {
+		return newTarget(d, path, opt.Replace)
+	}
+	if opt.Pipe == nil {
+		return nil, &Error{Path: path, What: "there is no pipe to write into", Do: "name a file", Kind: ErrTarget}
+	}
+	return &Target{disk: d, path: "standard output", file: pipeFile{opt.Pipe}, pipe: true}, nil
+}
+
+// pipeFile is a pipe as a file being written.
+type pipeFile struct{ io.Writer }
+
+func (pipeFile) Sync() error  { return nil }
+func (pipeFile) Close() error { return nil }
 
 // NewTarget checks path and creates the temporary file, on opt.Disk; path "" gives nil. Errors wrap ErrTarget.
 func NewTarget(path string, opt Options) (*Target, error) {
@@ -99,6 +120,9 @@ func (t *Target) sync() error {
 
 // place gives the file its final name.
 func (t *Target) place() error {
+	if t.pipe {
+		return nil
+	}
 	if err := t.free(); err != nil { // it may have come to be meanwhile
 		return err
 	}
@@ -131,7 +155,7 @@ func (t *Target) Fill(write func(io.Writer) error) error {
 // Drop removes what there is: the temporary file, or the final one when it replaced nothing. After the commit of the
 // sink that it was committed with, it does nothing.
 func (t *Target) Drop() error {
-	if t == nil || t.kept {
+	if t == nil || t.kept || t.pipe {
 		return nil
 	}
 	if t.open {
@@ -193,7 +217,10 @@ func bare(err error) error {
 
 // distinct tells whether input and outputs are different files, links resolved.
 func distinct(d disk.FS, inputs []Input, out OutputPaths) error {
-	if out.Quarantine != "" && resolved(out.Tagged) == resolved(out.Quarantine) {
+	if out.Quarantine == Pipe {
+		return &Error{Path: Pipe, What: "only tagged records can go into a pipe", Do: "name a file for the quarantine", Kind: ErrTarget}
+	}
+	if out.Quarantine != "" && out.Tagged != Pipe && resolved(out.Tagged) == resolved(out.Quarantine) {
 		return &Error{Path: out.Quarantine, What: "is both the tagged output and the quarantine", Do: "name two files", Kind: ErrTarget}
 	}
 	for _, in := range inputs {
@@ -211,7 +238,7 @@ func apart(d disk.FS, input string, out OutputPaths) error {
 		return nil // the input is open; its name may be gone
 	}
 	for _, path := range []string{out.Tagged, out.Quarantine} {
-		if path == "" {
+		if path == "" || path == Pipe {
 			continue
 		}
 		info, err := d.Stat(path)
