@@ -1,6 +1,11 @@
 package config
 
-import "labelweir/filter"
+import (
+	"fmt"
+	"strings"
+
+	"labelweir/filter"
+)
 
 // Config is all settings of this version. Default fills it; a [Loader] lays file, environment and flags over it.
 type Config struct {
@@ -13,15 +18,44 @@ type Config struct {
 
 // Input says where records come from.
 type Input struct {
-	File   string // input.file.path; empty: not a file
-	Trust  bool   // input.trust: read in the process itself, not in a guarded one; default false
-	Memory int64  // input.memory: bytes the guarded process may take; default 0: MemoryLimit says how many
+	File      string // input.file.path: files and folders, one a line, "-" for standard input; empty: not a file
+	Format    string // input.format: one of Formats; default "": told by the first bytes, else by the name
+	Delimiter byte   // input.delimiter of CSV; default 0: found out
+	Trust     bool   // input.trust: read in the process itself, not in a guarded one; default false
+	Memory    int64  // input.memory: bytes the guarded process may take; default 0: MemoryLimit says how many
 }
+
+// Files lists the files and folders to read.
+func (i Input) Files() []string {
+	var names []string
+	for name := range strings.Lines(i.File) {
+		if name = strings.TrimSuffix(name, "\n"); name != "" {
+			names = append(names, name)
+		}
+	}
+	return names
+}
+
+// Title is what messages call the input.
+func (i Input) Title() string {
+	switch names := i.Files(); {
+	case i.File == Pipe:
+		return "standard input"
+	case len(names) > 1:
+		return fmt.Sprintf("%s and %d more", names[0], len(names)-1)
+	}
+	return i.File
+}
+
+// Pipe is the name of standard input and standard output.
+const Pipe = "-"
 
 // Output names the files to write; an empty name is a file not wanted.
 type Output struct {
-	Tagged     string // output.file.tagged
+	Format     string // output.format: one of Formats; default "": told by the file's name, else the input's
+	Tagged     string // output.file.tagged; "-" is standard output
 	Quarantine string // output.file.quarantine; only with mode divert
+	Unreadable string // output.file.unreadable: rows that can't be read; empty: such a row is an error
 	Report     string // output.file.report
 	Snapshot   string // output.file.snapshot
 	Replace    bool   // output.file.replace: whether files that exist may be replaced; default false
@@ -41,8 +75,8 @@ func (c *Config) MemoryLimit() int64 {
 // sweep seems complete.
 func (o Output) Files() []string {
 	var names []string
-	for _, name := range []string{o.Snapshot, o.Report, o.Quarantine, o.Tagged} {
-		if name != "" {
+	for _, name := range []string{o.Snapshot, o.Report, o.Unreadable, o.Quarantine, o.Tagged} {
+		if name != "" && name != Pipe {
 			names = append(names, name)
 		}
 	}

@@ -3,6 +3,7 @@ package config
 import (
 	"fmt"
 	"path/filepath"
+	"slices"
 
 	"labelweir/filter"
 )
@@ -27,6 +28,7 @@ func (l *Loader) Sweep() (*Config, error) {
 		k.add("output.file.quarantine", "nothing is held back in mode observe; give --mode divert, or leave it out")
 	}
 	k.files(c)
+	k.pipes(c)
 	if len(k.faults) > 0 {
 		return nil, k.faults
 	}
@@ -99,15 +101,32 @@ func (k *checker) window(c *Config) {
 	}
 }
 
+// pipes checks that what goes through a pipe goes alone.
+func (k *checker) pipes(c *Config) {
+	if names := c.Input.Files(); len(names) > 1 && slices.Contains(names, Pipe) {
+		k.add("input.file.path", "standard input can't be read together with files; name one or the other")
+	}
+	for _, f := range []struct{ path, name string }{
+		{"output.file.quarantine", c.Output.Quarantine}, {"output.file.unreadable", c.Output.Unreadable},
+		{"output.file.report", c.Output.Report}, {"output.file.snapshot", c.Output.Snapshot},
+	} {
+		if f.name == Pipe {
+			k.add(f.path, "only the tagged records can go to standard output; name a file")
+		}
+	}
+}
+
 // files checks that no two files are one.
 func (k *checker) files(c *Config) {
 	taken := make(map[string]string)
-	if c.Input.File != "" {
-		taken[filepath.Clean(c.Input.File)] = "the input"
+	for _, name := range c.Input.Files() {
+		taken[filepath.Clean(name)] = "the input"
 	}
+	delete(taken, Pipe) // what comes in there goes out elsewhere
 	for _, f := range []struct{ path, name, part string }{
 		{"output.file.tagged", c.Output.Tagged, "the tagged output"},
 		{"output.file.quarantine", c.Output.Quarantine, "the quarantine output"},
+		{"output.file.unreadable", c.Output.Unreadable, "for rows that can't be read"},
 		{"output.file.report", c.Output.Report, "the report"},
 		{"output.file.snapshot", c.Output.Snapshot, "the snapshot"},
 	} {

@@ -1,0 +1,13 @@
+package sweep
+
+import (
+	"labelweir/connectors/arrowfile"
+	"labelweir/connectors/csv"
+	"labelweir/connectors/parquet"
+	"labelweir/connectors/table"
+)
+
+// formats are the file formats that a sweep reads and writes.
+func formats() []table.Format {
+	return append(arrowfile.Formats(), parquet.Format(), csv.Format())
+}
