@@ -133,6 +133,15 @@ func (t *Target) place() error {
 	return nil
 }
 
+// Write implements io.Writer, for content that comes before Fill; errors wrap ErrWrite.
+func (t *Target) Write(b []byte) (int, error) {
+	n, err := t.file.Write(b)
+	if err != nil {
+		err = t.fault("can't be written", ErrWrite, err)
+	}
+	return n, err
+}
+
 // Fill writes the whole content through write, and brings it to the disk. Errors wrap ErrWrite.
 func (t *Target) Fill(write func(io.Writer) error) error {
 	if t == nil {
