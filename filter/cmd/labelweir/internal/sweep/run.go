@@ -1,6 +1,7 @@
 package sweep
 
 import (
+	"cmp"
 	"context"
 	"encoding/json"
 	"errors"
@@ -9,6 +10,7 @@ import (
 	"time"
 
 	"labelweir/connectors/arrowfile"
+	"labelweir/connectors/disk"
 	"labelweir/connectors/table"
 	"labelweir/filter"
 	"labelweir/filter/cmd/labelweir/internal/guard"
@@ -20,16 +22,20 @@ type Watch struct {
 	Chosen   func([]table.Choice)                  // once, when the columns are known and the outputs can be created
 	Progress func(phase string, done, total int64) // from one goroutine at a time
 	Marks    *guard.Marks                          // where the sweep is, for who outlives it
+	Disk     disk.FS                               // where outputs go; nil: the machine's disk
+	Learner  filter.Learner                        // nil: the real model
 	Now      func() time.Time                      // clock of the report's times; nil: time.Now
 }
 
-// Run sweeps the file of c, which [config.Loader.Sweep] has passed, and writes all files that c names. Either all of them
-// stand under their names afterwards, or, when the error is not nil, none but those committed before it: the tagged file
-// and the quarantine go first, then the snapshot and the report.
+// Run sweeps the file of c, which [config.Loader.Sweep] has passed, and writes all files that c names. They get their
+// names when all of them are whole and on the disk: snapshot, report, quarantine, and the tagged file last. When the
+// error is not nil, none stands there that was not there before.
 func Run(ctx context.Context, c *config.Config, w Watch) (*filter.Report, error) {
 	options := table.DefaultOptions()
 	options.Replace = c.Output.Replace
 	options.Mark = marker(w.Marks)
+	options.Disk = w.Disk
+	stamps := takeStamps(c.Input.File)
 	w.Marks.Enter(c.Input.File)
 	first, err := open(ctx, c, options)
 	w.Marks.Leave()
@@ -38,22 +44,23 @@ func Run(ctx context.Context, c *config.Config, w Watch) (*filter.Report, error)
 	}
 	defer first.Close()
 	record, choice := first.Record(), first.Choice()
-	snapshotFile, err := openTarget(c.Output.Snapshot, c.Output.Replace)
+	snapshotFile, err := table.NewTarget(c.Output.Snapshot, options)
 	if err != nil {
 		return nil, err
 	}
-	defer snapshotFile.close()
-	reportFile, err := openTarget(c.Output.Report, c.Output.Replace)
+	defer snapshotFile.Drop()
+	reportFile, err := table.NewTarget(c.Output.Report, options)
 	if err != nil {
 		return nil, err
 	}
-	defer reportFile.close()
+	defer reportFile.Drop()
 
 	sink, err := table.Create(
 		table.OutputPaths{Tagged: c.Output.Tagged, Quarantine: c.Output.Quarantine}, first, options)
 	if err != nil {
 		return nil, err
 	}
+	defer sink.Close()
 	if w.Chosen != nil {
 		w.Chosen(choice)
 	}
@@ -61,15 +68,17 @@ func Run(ctx context.Context, c *config.Config, w Watch) (*filter.Report, error)
 	s := filter.Sweep{
 		Config: c.Filter,
 		Open: func(context.Context) (filter.Source, error) {
-			return openMarked(w.Marks, c.Input.File, func() (filter.Source, error) { return arrowfile.Open(c.Input.File, record, options) })
+			source, err := openMarked(w.Marks, c.Input.File, func() (filter.Source, error) { return arrowfile.Open(c.Input.File, record, options) })
+			return stamps.watch(source, err)
 		},
-		Sink: sink,
+		Sink: unplaced{sink},
 		Progress: func(phase string, done, total int64) {
 			w.Marks.Phase(phase)
 			if w.Progress != nil {
 				w.Progress(phase, done, total)
 			}
 		},
+		Learner:    w.Learner,
 		OnSnapshot: func(s filter.Snapshot) { last = s },
 		Now:        w.Now,
 	}
@@ -81,14 +90,24 @@ func Run(ctx context.Context, c *config.Config, w Watch) (*filter.Report, error)
 	if report.Rows.In == 0 {
 		report.Notes = append(report.Notes, c.Input.File+" has no rows, so there was nothing to judge")
 	}
-	if last != nil {
-		if err := snapshotFile.commit(func(w io.Writer) error { _, err := last.WriteTo(w); return err }); err != nil {
+	if last == nil {
+		if c.Output.Snapshot != "" {
+			report.Notes = append(report.Notes, fmt.Sprintf("no snapshot was trained, so %s was not written", c.Output.Snapshot))
+		}
+		if err := snapshotFile.Drop(); err != nil {
 			return nil, err
 		}
-	} else if snapshotFile != nil {
-		report.Notes = append(report.Notes, fmt.Sprintf("no snapshot was trained, so %s was not written", c.Output.Snapshot))
+		snapshotFile = nil
 	}
-	return report, reportFile.commit(func(w io.Writer) error { return writeReport(w, report) })
+	err = cmp.Or(
+		snapshotFile.Fill(func(w io.Writer) error { _, err := last.WriteTo(w); return err }),
+		reportFile.Fill(func(w io.Writer) error { return writeReport(w, report) }),
+		stamps.check())
+	if err != nil {
+		return nil, err
+	}
+	w.Marks.Phase("place")
+	return report, sink.CommitWith(ctx, snapshotFile, reportFile)
 }
 
 // open reads the input's beginning: the columns tell what there is to learn from, the first rows how the file is
