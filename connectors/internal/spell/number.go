@@ -65,12 +65,16 @@ func Float(dst []byte, v float64, bits int, finite bool) (out []byte, null bool)
 		}
 		return notFinite(dst, v), false
 	}
+	if v == 0 && math.Signbit(v) {
+		return append(dst, "-0.0"...), false // without the point it would pass for an integer, which has no such zero
+	}
 	return strconv.AppendFloat(dst, v, notation(v), -1, bits), false
 }
 
-// notation: very large and very small numbers have an exponent.
+// notation: very large and very small numbers have an exponent, as Python's repr gives it to them. From 1e16 on digits
+// alone would pass for an integer that fits no 64 bits.
 func notation(v float64) byte {
-	if x := math.Abs(v); x != 0 && (x < 1e-6 || x >= 1e21) {
+	if x := math.Abs(v); x != 0 && (x < 1e-5 || x >= 1e16) {
 		return 'e'
 	}
 	return 'f'

@@ -61,7 +61,7 @@ func TestValues(t *testing.T) {
 		{arrow.PrimitiveTypes.Int8, `[-128, 127, null]`, `-128 127 ~`, `-128 127 null`},
 		{arrow.PrimitiveTypes.Uint64, `[0, 200]`, `0 200`, `0 200`},
 		{arrow.PrimitiveTypes.Int64, `[-9223372036854775808]`, `-9223372036854775808`, `-9223372036854775808`},
-		{arrow.PrimitiveTypes.Float64, `[0.1, 1e21, 1e-7, 100, -0.0]`, `0.1 1e+21 1e-07 100 -0`, `0.1 1e+21 1e-07 100 -0`},
+		{arrow.PrimitiveTypes.Float64, `[0.1, 1e16, 1e-7, 100, -0.0]`, `0.1 1e+16 1e-07 100 -0.0`, `0.1 1e+16 1e-07 100 -0.0`},
 		{arrow.BinaryTypes.String, `["Gala", "", null, "a\"b\n"]`, "Gala  ~ a\"b\n", `"Gala" "" null "a\"b\n"`},
 		{arrow.BinaryTypes.Binary, `["AAH/", null]`, `AAH/ ~`, `"AAH/" null`},
 		{words, `["Gala", null, "Fuji"]`, `Gala ~ Fuji`, `"Gala" null "Fuji"`},

@@ -112,6 +112,9 @@ func cells(a *table.Cells, json bool) (Speller, form, error) {
 	}
 	str := quoting(plain)
 	means := a.DataType().(*table.CellType).Means.ID()
+	if arrow.IsNested(means) { // kept as JSON
+		return plain, literal, nil
+	}
 	return func(dst []byte, i int) ([]byte, bool) {
 		lo := len(dst)
 		dst, null := plain(dst, i)

@@ -1,0 +1,160 @@
+package jsonlines
+
+import (
+	"math"
+
+	"github.com/apache/arrow/go/v16/arrow"
+
+	"labelweir/connectors/internal/cell"
+	"labelweir/connectors/jsonlines/internal/scan"
+	"labelweir/connectors/table"
+)
+
+// columns are the columns of a file.
+type columns struct {
+	names []string
+	types []arrow.DataType
+	index map[string]int // of each name
+}
+
+// likeColumns takes the columns of a schema.
+func likeColumns(like *arrow.Schema) *columns {
+	c := &columns{index: map[string]int{}}
+	for i, f := range like.Fields() {
+		if i != table.RawIndex(like) {
+			c.add(f.Name, f.Type)
+		}
+	}
+	return c
+}
+
+func (c *columns) add(name string, dt arrow.DataType) {
+	if _, known := c.index[name]; !known {
+		c.index[name] = len(c.names)
+		c.names = append(c.names, name)
+		c.types = append(c.types, dt)
+	}
+}
+
+// schema is the schema of the record batches: the columns and the hidden one.
+func (c *columns) schema() *arrow.Schema {
+	var fields []arrow.Field
+	for i, name := range c.names {
+		fields = append(fields, arrow.Field{Name: name, Type: c.types[i], Nullable: true})
+	}
+	return arrow.NewSchema(append(fields, table.RawField(formatName)), nil)
+}
+
+// peekBytes bounds the text looked at for the columns.
+const peekBytes = 64 << 20
+
+// infer finds the columns of the first lines.
+func infer(l *lines, peek int) (*columns, error) {
+	c := &columns{index: map[string]int{}}
+	var habits []habit
+	var name []byte
+	first, read := "", 0
+	for start := l.feed.Offset(); read < peek && l.feed.Offset() < start+peekBytes; {
+		ok, err := l.next()
+		if err != nil {
+			return nil, err
+		}
+		if !ok {
+			break
+		}
+		if l.reason != "" {
+			if first == "" {
+				first = "the first line can't be read: " + l.reason
+			}
+			continue
+		}
+		read++
+		for _, m := range l.scan.Members {
+			var key []byte
+			key, name = textOf(l.text, m.Key, name)
+			i, known := c.index[string(key)]
+			if !known {
+				i = len(c.names)
+				c.add(string(key), nil)
+				habits = append(habits, habit{})
+			}
+			habits[i].watch(l.text, m)
+		}
+		if len(c.names) > limits().Members {
+			return nil, l.fault("has too many different members in its first objects", "check that they are records of one kind", nil)
+		}
+	}
+	switch {
+	case read > 0:
+	case first != "":
+		return nil, table.At(table.Place{Path: l.path}, table.ErrUnreadable, first, "write one JSON object on each line (jq -c '.[]' makes lines of an array)", nil)
+	default:
+		return nil, table.At(table.Place{Path: l.path}, table.ErrUnreadable, "has no lines", "check the step that wrote it", nil)
+	}
+	for i := range habits {
+		c.types[i] = habits[i].dataType()
+	}
+	return c, nil
+}
+
+// habit is what the first lines show of one member.
+type habit struct {
+	bools, numbers, strings, vectors, others bool // kinds of values met
+	objects                                  bool // among the others
+	guess                                    cell.Guess
+	size                                     int // of the vectors; −1 when they differ
+	scratch                                  []float64
+	text                                     []byte
+}
+
+// watch takes in one member of the line.
+func (h *habit) watch(line []byte, m scan.Member) {
+	switch m.Kind {
+	case scan.Bool:
+		h.bools = true
+	case scan.Number:
+		h.numbers = true
+		h.guess.Watch(line[m.Value.Lo:m.Value.Hi])
+	case scan.String:
+		h.strings = true
+		var text []byte
+		text, h.text = textOf(line, m.Value, h.text)
+		h.guess.Watch(text)
+	case scan.Array:
+		var ok bool
+		h.scratch, ok = scan.Numbers(h.scratch[:0], line[m.Value.Lo:m.Value.Hi], math.NaN())
+		switch {
+		case !ok || len(h.scratch) == 0 || h.vectors && len(h.scratch) != h.size:
+			h.others = true
+		default:
+			h.vectors, h.size = true, len(h.scratch)
+		}
+	case scan.Object:
+		h.others, h.objects = true, true
+	}
+}
+
+// dataType is the type of the column. Scalars of several kinds are text.
+func (h *habit) dataType() arrow.DataType {
+	scalars := h.bools || h.numbers || h.strings
+	switch {
+	case h.vectors && !h.others && !scalars:
+		return arrow.FixedSizeListOf(int32(h.size), arrow.PrimitiveTypes.Float64)
+	case h.objects:
+		return table.NewCellType(arrow.StructOf())
+	case h.vectors || h.others:
+		return table.NewCellType(arrow.ListOf(arrow.Null))
+	case h.bools && !h.numbers && !h.strings:
+		return table.NewCellType(arrow.FixedWidthTypes.Boolean)
+	case h.numbers && !h.bools && !h.strings:
+		if dt := h.guess.Type(); dt != nil {
+			return table.NewCellType(dt)
+		}
+		return table.NewCellType(arrow.PrimitiveTypes.Float64)
+	case h.strings && !h.numbers && !h.bools:
+		if dt := h.guess.Type(); dt != nil && dt.ID() == arrow.TIMESTAMP {
+			return table.NewCellType(dt)
+		}
+	}
+	return arrow.BinaryTypes.String
+}
