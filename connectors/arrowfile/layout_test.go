@@ -201,6 +201,31 @@ func TestOutputBytesDoNotDependOnTheLayout(t *testing.T) {
 	})
 }
 
+// Blocks of 512 rows and their multiples need not be copied when they stand in the input like that.
+func TestOutputBytesDoNotDependOnWhatIsCopied(t *testing.T) {
+	dir := t.TempDir()
+	in, rows := filepath.Join(dir, "in"), crates(1300, 7)
+	var want []byte
+	for _, cuts := range [][]int{nil, {100, 700}, {512, 1024}, {1, 2, 600, 601}} {
+		writeCrates(t, in, Stream, true, rows, cuts)
+		for _, batch := range []int{64, 100, 4096} {
+			opt := counted(t)
+			opt.Rows, opt.BlockRows, opt.Replace = batch, 512, true
+			out := table.OutputPaths{Tagged: filepath.Join(dir, "tagged")}
+			copyFile(t, open(t, in, filter.Record{Label: "grade"}, opt), out, opt, func(row int64) filter.Tag {
+				tag := tagOf(row)
+				tag.Divert = false
+				return tag
+			})
+			got := must(os.ReadFile(out.Tagged))
+			if want != nil && !bytes.Equal(got, want) {
+				t.Errorf("the output differs when the input is cut at %v and read %d rows at a time", cuts, batch)
+			}
+			want = got
+		}
+	}
+}
+
 func TestRecordBatchesWrittenAreBounded(t *testing.T) {
 	in, out := filepath.Join(t.TempDir(), "in"), outIn(t, ".arrow")
 	rows := crates(50, 1)

@@ -6,7 +6,8 @@ import (
 	"github.com/apache/arrow/go/v16/arrow/memory"
 )
 
-// gather copies record batches of one schema and equal dictionaries, one after the other, into one.
+// gather puts record batches of one schema and equal dictionaries, one after the other, into one. It copies what does not
+// stand there like that already.
 func gather(parts []arrow.Record, mem memory.Allocator) (rec arrow.Record, err error) {
 	schema := parts[0].Schema()
 	cols := make([]arrow.Array, 0, schema.NumFields())
@@ -24,9 +25,12 @@ func gather(parts []arrow.Record, mem memory.Allocator) (rec arrow.Record, err e
 		for k, p := range parts {
 			arrs[k] = p.Column(i)
 		}
-		col, err := concatenate(arrs, mem)
-		if err != nil {
-			return nil, err
+		col, ok := adjoined(arrs, int(rows))
+		if !ok {
+			var err error
+			if col, err = concatenate(arrs, mem); err != nil {
+				return nil, err
+			}
 		}
 		cols = append(cols, col)
 	}

@@ -25,7 +25,7 @@ func tagFields() []arrow.Field {
 type tagColumns struct {
 	score, margin     *array.Float64Builder
 	verdict, reason   *array.Int8Builder
-	implied, snapshot *array.StringBuilder
+	implied, snapshot *tagText
 
 	verdicts, reasons arrow.Array // the dictionaries
 }
@@ -34,7 +34,7 @@ func newTagColumns(mem memory.Allocator) *tagColumns {
 	t := &tagColumns{
 		score: array.NewFloat64Builder(mem), margin: array.NewFloat64Builder(mem),
 		verdict: array.NewInt8Builder(mem), reason: array.NewInt8Builder(mem),
-		implied: array.NewStringBuilder(mem), snapshot: array.NewStringBuilder(mem),
+		implied: &tagText{mem: mem}, snapshot: &tagText{mem: mem},
 	}
 	var names []string
 	for v := filter.Pass; v <= filter.Unscored; v++ {
@@ -58,9 +58,11 @@ func dictionaryOf(mem memory.Allocator, names []string) arrow.Array {
 
 // reserve makes room for more rows.
 func (t *tagColumns) reserve(n int) {
-	for _, b := range []array.Builder{t.score, t.margin, t.verdict, t.reason, t.implied, t.snapshot} {
+	for _, b := range []array.Builder{t.score, t.margin, t.verdict, t.reason} {
 		b.Reserve(n)
 	}
+	t.implied.reserve(n)
+	t.snapshot.reserve(n)
 }
 
 // add appends one row, for which there must be room.
@@ -68,8 +70,8 @@ func (t *tagColumns) add(tag *filter.Tag) {
 	number(t.score, tag.Score)
 	number(t.margin, tag.Margin)
 	t.verdict.UnsafeAppend(int8(tag.Verdict))
-	text(t.implied, tag.Implied, tag.Verdict != filter.Unscored)
-	text(t.snapshot, tag.Snapshot, tag.Snapshot != "")
+	t.implied.add(tag.Implied, tag.Verdict != filter.Unscored)
+	t.snapshot.add(tag.Snapshot, tag.Snapshot != "")
 	if tag.Reason == model.Scored {
 		t.reason.UnsafeAppendBoolToBitmap(false)
 	} else {
@@ -85,19 +87,11 @@ func number(b *array.Float64Builder, v float64) {
 	}
 }
 
-func text(b *array.StringBuilder, s string, valid bool) {
-	if valid {
-		b.Append(s)
-	} else {
-		b.AppendNull()
-	}
-}
-
 // take gives the columns of the rows added since the last take; the caller releases them.
 func (t *tagColumns) take() []arrow.Array {
 	return []arrow.Array{
-		t.score.NewArray(), indexed(t.verdict, t.verdicts), t.implied.NewArray(),
-		t.margin.NewArray(), indexed(t.reason, t.reasons), t.snapshot.NewArray(),
+		t.score.NewArray(), indexed(t.verdict, t.verdicts), t.implied.take(),
+		t.margin.NewArray(), indexed(t.reason, t.reasons), t.snapshot.take(),
 	}
 }
 
@@ -108,7 +102,9 @@ func indexed(b *array.Int8Builder, dict arrow.Array) arrow.Array {
 }
 
 func (t *tagColumns) release() {
-	for _, x := range []interface{ Release() }{t.score, t.margin, t.verdict, t.reason, t.implied, t.snapshot, t.verdicts, t.reasons} {
+	for _, x := range []interface{ Release() }{t.score, t.margin, t.verdict, t.reason, t.verdicts, t.reasons} {
 		x.Release()
 	}
+	t.implied.release()
+	t.snapshot.release()
 }
