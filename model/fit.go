@@ -191,7 +191,9 @@ func (f *fitting) cold(ctx context.Context) (*noise.Layer, *noise.Facts, error) 
 	f.progress("noise", 0, 1)
 	data := f.subset(nil, f.members()...)
 	layer, facts := noise.Fit(data)
-	f.leaveOut(layer, data)
+	if f.leaveOut(layer, data) {
+		layer, facts = noise.Refit(f.subset(nil, f.members()...), layer)
+	}
 	f.forget()
 	f.progress("noise", 1, 1)
 	return layer, facts, f.whole(ctx)
@@ -227,20 +229,28 @@ func (f *fitting) trials(folds int) int {
 
 const trialRows = 1200
 
-// leaveOut drops members that do not move the logits.
-func (f *fitting) leaveOut(l *noise.Layer, d *noise.Data) {
+// leaveOut drops members that do not move the logits, and the vote on observed labels already when it moves them little:
+// no other member needs that forest to be walked for each fresh row. It tells whether the others should be fitted anew.
+func (f *fitting) leaveOut(l *noise.Layer, d *noise.Data) (anew bool) {
 	var at []int
 	var plan []member
 	for i, m := range f.plan {
-		if l.Spread(d, i) >= fewest {
+		spread, least := l.Spread(d, i), fewest
+		if m.forest == learn.Raw {
+			least = fewestForWalk
+		}
+		if spread >= least {
 			at, plan = append(at, i), append(plan, m)
+		} else if spread >= fewest {
+			anew = true
 		}
 	}
 	if len(at) == 0 {
-		return
+		return false
 	}
 	l.Keep(at)
 	f.plan = plan
+	return anew
 }
 
 // roughRows is up to how many rows the objective is rough enough for the escapes from its local minima to find better

@@ -28,6 +28,9 @@ func (m member) String() string {
 // fewest is the spread in logits below which a member is left out.
 const fewest = 0.02
 
+// fewestForWalk is the same of a member for whose sake alone a forest would be walked.
+const fewestForWalk = 0.1
+
 // preferLambda is the evidence in nats that each step to a larger λ is given beforehand: of settings that do alike on the
 // rows at hand, the more restrained one does better on others.
 const preferLambda = 3
