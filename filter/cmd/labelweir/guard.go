@@ -61,7 +61,7 @@ func died(d *guard.Death, c *config.Config) error {
 		how += " beyond the " + size(c.MemoryLimit()) + " it may take"
 	}
 	if d.At.Reading {
-		return &failure{exitInput, fmt.Errorf("%s%s: %s; %s", c.Input.File, where(d.At), how, readingAdvice(d))}
+		return &failure{exitInput, fmt.Errorf("%s%s: %s; %s", d.At.File, where(d.At), how, readingAdvice(d))}
 	}
 	phase := d.At.Phase
 	if phase == "" {

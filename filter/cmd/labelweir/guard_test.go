@@ -148,7 +148,7 @@ func TestAKilledParentTakesTheChildWithIt(t *testing.T) {
 func TestTrustNeedsNoChild(t *testing.T) {
 	dir := t.TempDir()
 	in, out := filepath.Join(dir, "in.arrow"), filepath.Join(dir, "out.arrow")
-	if err := demo.Grow(500, 1).WriteLine(in); err != nil {
+	if err := demo.Grow(120, 1).WriteLine(in); err != nil {
 		t.Fatal(err)
 	}
 	program, err := os.Executable()

@@ -60,7 +60,7 @@ func act(what string) {
 	case "where":
 		c.Marks.Phase("read")
 		c.Marks.Enter("apples.arrow")
-		c.Marks.At("record batch", 3, "blush")
+		c.Marks.At("apples.arrow", "record batch", 3, "blush")
 		greed()
 	case "memory":
 		greed()
@@ -259,6 +259,6 @@ func BenchmarkMark(b *testing.B) {
 	m := &Marks{page: make([]byte, pageBytes)}
 	b.ReportAllocs()
 	for b.Loop() {
-		m.At("record batch", 7, "diameter_mm")
+		m.At("apples.arrow", "record batch", 7, "diameter_mm")
 	}
 }

@@ -43,19 +43,25 @@ type Marks struct {
 	page []byte
 }
 
-// Enter notes that bytes of file are being read from now on; Leave that they are not.
+// Enter notes that bytes of file are being read from now on.
 func (m *Marks) Enter(file string) {
 	m.note(func(p []byte) { putText(p, atFile, roomFile, file); p[atReading] = 1 })
 }
 
-// Leave ends what Enter began.
+// Resume is Enter for the file and the place noted last.
+func (m *Marks) Resume() {
+	m.note(func(p []byte) { p[atReading] = 1 })
+}
+
+// Leave ends what Enter or Resume began.
 func (m *Marks) Leave() {
 	m.note(func(p []byte) { p[atReading] = 0 })
 }
 
-// At notes the batch being read, counted from 1, of what unit says, and the column within it, or none.
-func (m *Marks) At(unit string, batch int64, column string) {
+// At notes the file and the batch being read, counted from 1, of what unit says, and the column within it, or none.
+func (m *Marks) At(file, unit string, batch int64, column string) {
 	m.note(func(p []byte) {
+		putText(p, atFile, roomFile, file)
 		binary.NativeEndian.PutUint64(p[atBatch:], uint64(batch))
 		putText(p, atUnit, roomUnit, unit)
 		putText(p, atColumn, roomColumn, column)

@@ -16,11 +16,11 @@ func marker(m *guard.Marks) func(at table.Place, column string) {
 	return func(at table.Place, column string) {
 		switch {
 		case at.Batch > 0:
-			m.At("record batch", int64(at.Batch), column)
+			m.At(at.Path, "record batch", int64(at.Batch), column)
 		case at.Group > 0:
-			m.At("row group", int64(at.Group), column)
+			m.At(at.Path, "row group", int64(at.Group), column)
 		default:
-			m.At("line", at.Line, column)
+			m.At(at.Path, "line", at.Line, column)
 		}
 	}
 }
@@ -29,24 +29,23 @@ func marker(m *guard.Marks) func(at table.Place, column string) {
 type marked struct {
 	filter.Source
 	marks *guard.Marks
-	file  string
 }
 
 // openMarked marks the opening of a source, too: it reads the file's beginning.
 func openMarked(m *guard.Marks, file string, open func() (filter.Source, error)) (filter.Source, error) {
 	m.Enter(file)
 	defer m.Leave()
-	m.At("", 0, "") // not known yet
+	m.At(file, "", 0, "") // not known yet
 	source, err := open()
 	if err != nil || m == nil {
 		return source, err
 	}
-	return &marked{source, m, file}, nil
+	return &marked{source, m}, nil
 }
 
 // Next implements filter.Source.
 func (s *marked) Next(ctx context.Context) (*filter.Batch, error) {
-	s.marks.Enter(s.file)
+	s.marks.Resume()
 	defer s.marks.Leave()
 	return s.Source.Next(ctx)
 }
