@@ -12,8 +12,12 @@ import (
 	"labelweir/connectors/table"
 )
 
-// batchBytes is how many bytes of rows fill a record batch, however few rows that are.
-const batchBytes = 16 << 20
+// A record batch is full, however few rows it has, when its rows have so many bytes or its columns so many cells: empty
+// cells take room in memory too.
+const (
+	batchBytes = 16 << 20
+	batchCells = 4 << 20
+)
 
 // reader implements table.Reader.
 type reader struct {
@@ -38,6 +42,7 @@ func newReader(f table.File, opt table.ReadOptions) (*reader, error) {
 	}
 	r := &reader{rows: newRows(f, h.delimiter, opt.MostRow), opt: opt, size: f.Size, header: h, text: mustBeText(h.names, opt.Text),
 		columns: make([]column.Text, len(h.names)), place: table.Place{Path: f.Path}}
+	r.opt.Rows = min(opt.Rows, batchCells/len(h.names))
 	r.rows.columns, r.rows.beyond = len(h.names), h.line
 	r.rows.feed.Restart(h.end)
 	first := likeDelimiter(opt.Like, h.delimiter)

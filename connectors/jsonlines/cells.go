@@ -57,7 +57,7 @@ func (c *cells) appendVector(value []byte, m scan.Member) (reason string) {
 		return fmt.Sprintf("has %s where %q should have %d numbers, at byte %d of the line", kindName(m.Kind), c.name, c.vectors.Size, place(m))
 	}
 	var ok bool
-	c.scratch, ok = scan.Numbers(c.scratch[:0], value, math.NaN())
+	c.scratch, ok = scan.Numbers(c.scratch[:0], value, math.NaN(), mostNumbers)
 	switch {
 	case !ok:
 		return fmt.Sprintf("has more than numbers in the array %q, at byte %d of the line", c.name, place(m))

@@ -53,6 +53,7 @@ func infer(l *lines, peek int) (*columns, error) {
 	c := &columns{index: map[string]int{}}
 	var habits []habit
 	var name []byte
+	var scratch []float64
 	first, read := "", 0
 	for start := l.feed.Offset(); read < peek && l.feed.Offset() < start+peekBytes; {
 		ok, err := l.next()
@@ -78,7 +79,7 @@ func infer(l *lines, peek int) (*columns, error) {
 				c.add(string(key), nil)
 				habits = append(habits, habit{})
 			}
-			habits[i].watch(l.text, m)
+			habits[i].watch(l.text, m, &scratch)
 		}
 		if len(c.names) > limits().Members {
 			return nil, l.fault("has too many different members in its first objects", "check that they are records of one kind", nil)
@@ -91,24 +92,31 @@ func infer(l *lines, peek int) (*columns, error) {
 	default:
 		return nil, table.At(table.Place{Path: l.path}, table.ErrUnreadable, "has no lines", "check the step that wrote it", nil)
 	}
+	room := mostNumbers
 	for i := range habits {
+		if room -= habits[i].size; room < 0 { // kept as JSON
+			habits[i].others = true
+		}
 		c.types[i] = habits[i].dataType()
 	}
 	return c, nil
 }
+
+// mostNumbers is the most numbers that the vectors of one row may have together: a bound for what a row can make us
+// allocate.
+const mostNumbers = 1 << 20
 
 // habit is what the first lines show of one member.
 type habit struct {
 	bools, numbers, strings, vectors, others bool // kinds of values met
 	objects                                  bool // among the others
 	guess                                    cell.Guess
-	size                                     int // of the vectors; −1 when they differ
-	scratch                                  []float64
+	size                                     int // of the vectors
 	text                                     []byte
 }
 
 // watch takes in one member of the line.
-func (h *habit) watch(line []byte, m scan.Member) {
+func (h *habit) watch(line []byte, m scan.Member, scratch *[]float64) {
 	switch m.Kind {
 	case scan.Bool:
 		h.bools = true
@@ -121,13 +129,11 @@ func (h *habit) watch(line []byte, m scan.Member) {
 		text, h.text = textOf(line, m.Value, h.text)
 		h.guess.Watch(text)
 	case scan.Array:
-		var ok bool
-		h.scratch, ok = scan.Numbers(h.scratch[:0], line[m.Value.Lo:m.Value.Hi], math.NaN())
-		switch {
-		case !ok || len(h.scratch) == 0 || h.vectors && len(h.scratch) != h.size:
+		x, ok := scan.Numbers((*scratch)[:0], line[m.Value.Lo:m.Value.Hi], math.NaN(), mostNumbers)
+		if *scratch = x; !ok || len(x) == 0 || h.vectors && len(x) != h.size {
 			h.others = true
-		default:
-			h.vectors, h.size = true, len(h.scratch)
+		} else {
+			h.vectors, h.size = true, len(x)
 		}
 	case scan.Object:
 		h.others, h.objects = true, true

@@ -12,8 +12,12 @@ import (
 	"labelweir/connectors/table"
 )
 
-// batchBytes is how many bytes of lines fill a record batch, however few lines that are.
-const batchBytes = 16 << 20
+// A record batch is full, however few lines it has, when its lines have so many bytes or its columns so many values:
+// absent values take room in memory too.
+const (
+	batchBytes  = 16 << 20
+	batchValues = 4 << 20
+)
 
 // reader implements table.Reader.
 type reader struct {
@@ -46,9 +50,12 @@ func newReader(f table.File, opt table.ReadOptions) (*reader, error) {
 	r.lines.feed.Restart(begin)
 	r.schema, r.finder = c.schema(), newFinder(c)
 	r.cells = make([]cells, len(c.names))
+	width := 1
 	for i, dt := range c.types {
 		r.cells[i] = newCells(c.names[i], dt, slices.Contains(opt.Text, c.names[i]))
+		width += max(1, r.cells[i].vectors.Size)
 	}
+	r.opt.Rows = min(opt.Rows, max(1, batchValues/width))
 	return r, nil
 }
 

@@ -2,9 +2,12 @@ package jsonlines
 
 import (
 	"errors"
+	"fmt"
 	"reflect"
 	"strings"
 	"testing"
+
+	"github.com/apache/arrow/go/v16/arrow"
 
 	"labelweir/connectors/table"
 )
@@ -169,5 +172,31 @@ func TestPlaceAndProgress(t *testing.T) {
 		if rd.Place().Line != want.line || done != want.done || size != 17 {
 			t.Errorf("line %d, %d of %d bytes, want %+v", rd.Place().Line, done, size, want)
 		}
+	}
+}
+
+// A few bytes a line must not cost megabytes: here 20,000 columns, and a vector of 500,000 numbers of which there is room
+// for two.
+func TestRecordBatchesOfManyValuesHaveFewRows(t *testing.T) {
+	var wide strings.Builder
+	for i := range 20_000 {
+		fmt.Fprintf(&wide, ",\"m%d\":1", i)
+	}
+	long := "[1" + strings.Repeat(",2", 499_999) + "]"
+	text := "{" + wide.String()[1:] + `,"a":` + long + `,"b":` + long + `,"c":` + long + "}\n" + strings.Repeat("{}\n", 50)
+	rd := must(open(file(text), options(t)))
+	if got := rd.Schema().Field(20_002).Type.String(); got != "list<item: null, nullable>" {
+		t.Errorf("the third vector is %s", got)
+	}
+	rows := int64(0)
+	if err := each(t, rd, func(rec arrow.Record) {
+		if rows += rec.NumRows(); rec.NumRows()*rec.NumCols() > batchValues {
+			t.Fatalf("%d rows of %d columns", rec.NumRows(), rec.NumCols())
+		}
+		if rec.NumRows() > 4 {
+			t.Fatalf("%d rows of vectors with 1,000,000 numbers", rec.NumRows())
+		}
+	}); err != nil || rows != 51 {
+		t.Errorf("%d rows, %v", rows, err)
 	}
 }

@@ -1,9 +1,6 @@
 package cell
 
-import (
-	"bytes"
-	"time"
-)
+import "time"
 
 // Style is how a moment is written.
 type Style uint8
@@ -20,7 +17,7 @@ const (
 // seconds and at most nine digits behind them if wanted, and Z or ±hh, ±hhmm, ±hh:mm for the zone. Without a zone it is
 // UTC. It gives seconds since 1970 and nanoseconds on top, and the digits behind the second.
 func Moment(b []byte) (seconds int64, nanos int32, digits int, style Style) {
-	s := scanner{b: bytes.Trim(b, " \t"), ok: true}
+	s := scanner{b: trim(b), ok: true}
 	year := s.number(4, 0, 9999)
 	s.expect('-')
 	month := s.number(2, 1, 12)

@@ -3,20 +3,30 @@
 package cell
 
 import (
-	"bytes"
 	"math"
 	"strconv"
 )
 
 // Bool reads true and false in any capitals.
 func Bool(b []byte) (v, ok bool) {
-	switch b = bytes.Trim(b, " \t"); len(b) {
+	switch b = trim(b); len(b) {
 	case 4:
 		return true, is(b, "true")
 	case 5:
 		return false, is(b, "false")
 	}
 	return false, false
+}
+
+// trim takes blanks and tabs off both ends.
+func trim(b []byte) []byte {
+	for len(b) > 0 && (b[0] == ' ' || b[0] == '\t') {
+		b = b[1:]
+	}
+	for len(b) > 0 && (b[len(b)-1] == ' ' || b[len(b)-1] == '\t') {
+		b = b[:len(b)-1]
+	}
+	return b
 }
 
 // is compares b, capitals aside, with a word of small letters.
@@ -31,7 +41,7 @@ func is(b []byte, word string) bool {
 
 // Int reads a whole number in decimal digits that fits 64 bits with sign.
 func Int(b []byte) (int64, bool) {
-	b = bytes.Trim(b, " \t")
+	b = trim(b)
 	if len(b) == 0 {
 		return 0, false
 	}
@@ -64,7 +74,7 @@ func Int(b []byte) (int64, bool) {
 // Number reads a decimal number with or without point and exponent. Names of what is no finite number (nan, inf) don't
 // count, nor do numbers too large for a float64.
 func Number(b []byte) (float64, bool) {
-	b = bytes.Trim(b, " \t")
+	b = trim(b)
 	if len(b) == 0 {
 		return 0, false
 	}
@@ -79,7 +89,7 @@ func Number(b []byte) (float64, bool) {
 
 // Missing tells whether a cell says in words, or by being empty, that it has no value.
 func Missing(b []byte) bool {
-	switch string(bytes.Trim(b, " \t")) {
+	switch string(trim(b)) {
 	case "", "NA", "N/A", "n/a", "na", "#N/A", "NaN", "nan", "-nan", "null", "NULL", "Null", "None", "none", "?", "-", ".":
 		return true
 	}

@@ -117,7 +117,7 @@ func compareNumbers(t *testing.T, b []byte) {
 	t.Helper()
 	var want []*float64
 	err := json.Unmarshal(b, &want)
-	got, ok := Numbers(nil, b, math.Inf(1))
+	got, ok := Numbers(nil, b, math.Inf(1), 1000)
 	if ok != (err == nil) || ok && len(got) != len(want) {
 		t.Fatalf("%q: got %v, %v, want %v", b, got, ok, err)
 	}
@@ -204,8 +204,16 @@ func TestScanningAllocatesNothing(t *testing.T) {
 	var l Line
 	l.Scan(b, usual)
 	nums := make([]float64, 0, 10)
-	if n := testing.AllocsPerRun(100, func() { l.Scan(b, usual); Numbers(nums, b[23:32], 0) }); n != 0 {
+	if n := testing.AllocsPerRun(100, func() { l.Scan(b, usual); Numbers(nums, b[23:32], 0, 3) }); n != 0 {
 		t.Errorf("%v allocations a line", n)
+	}
+}
+
+func TestArraysOfTooManyNumbersAreNotRead(t *testing.T) {
+	for most, want := range []bool{false, false, true, true} {
+		if _, ok := Numbers(nil, []byte("[1, 2]"), 0, most); ok != want {
+			t.Errorf("at most %d: %v", most, ok)
+		}
 	}
 }
 

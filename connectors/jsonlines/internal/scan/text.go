@@ -67,10 +67,14 @@ func nibble(c byte) int {
 	return -1
 }
 
-// Numbers appends the elements of an array that Scan let through, when all of them are numbers; null is what none
-// gives. ok is false for another array and for numbers too large for a float64.
-func Numbers(dst []float64, b []byte, none float64) (out []float64, ok bool) {
+// Numbers appends the elements of an array that Scan let through, when all of them are numbers; null gives none. ok is
+// false for another array, for one of more than most elements, and for numbers too large for a float64.
+func Numbers(dst []float64, b []byte, none float64, most int) (out []float64, ok bool) {
+	first := len(dst)
 	for i := 1; i < len(b); {
+		if len(dst)-first > most {
+			return dst, false
+		}
 		switch c := b[i]; {
 		case c == ',' || c == ' ' || c == '\t' || c == '\r' || c == '\n' || c == ']':
 			i++
