@@ -8,7 +8,7 @@ import (
 )
 
 // Formats are the names of the file formats.
-func Formats() []string { return []string{"arrow", "arrows", "parquet", "csv", "jsonl"} }
+func Formats() []string { return []string{"arrow", "arrows", "parquet", "csv", "jsonlines"} }
 
 // parseFormat reads the name of a format or auto, which is "".
 func parseFormat(s string) (string, error) {

@@ -50,7 +50,7 @@ func Settings() []Setting {
 	return []Setting{
 		setting("input.file.path", "", "FILE", "files or folders to read, one a line, or -; sweep's arguments say the same",
 			func(c *Config) *string { return &c.Input.File }, parseName, formatName),
-		setting("input.format", "format", "FORMAT", "of the input: arrow, arrows, parquet, csv or jsonl",
+		setting("input.format", "format", "FORMAT", "of the input: arrow, arrows, parquet, csv or jsonlines",
 			func(c *Config) *string { return &c.Input.Format }, parseFormat, formatFormat),
 		setting("input.delimiter", "delimiter", "CHARACTER", "between the cells of a CSV row",
 			func(c *Config) *byte { return &c.Input.Delimiter }, parseDelimiter, formatDelimiter),

@@ -122,7 +122,6 @@ func (k *checker) files(c *Config) {
 	for _, name := range c.Input.Files() {
 		taken[filepath.Clean(name)] = "the input"
 	}
-	delete(taken, Pipe) // what comes in there goes out elsewhere
 	for _, f := range []struct{ path, name, part string }{
 		{"output.file.tagged", c.Output.Tagged, "the tagged output"},
 		{"output.file.quarantine", c.Output.Quarantine, "the quarantine output"},
@@ -130,7 +129,7 @@ func (k *checker) files(c *Config) {
 		{"output.file.report", c.Output.Report, "the report"},
 		{"output.file.snapshot", c.Output.Snapshot, "the snapshot"},
 	} {
-		if f.name == "" {
+		if f.name == "" || f.name == Pipe {
 			continue
 		}
 		name := filepath.Clean(f.name)

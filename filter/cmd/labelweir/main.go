@@ -20,12 +20,13 @@ func main() { os.Exit(start()) }
 // start runs the command on the process's own streams until it ends or a signal stops it, and gives the exit code.
 func start() int {
 	limitAsError()
+	signal.Ignore(syscall.SIGPIPE) // whoever reads our output may stop early: writing fails then, as it should
 	child, err := guard.Join()
 	if err != nil {
 		fmt.Fprintf(os.Stderr, "labelweir: %v\n", err)
 		return exitFailed
 	}
-	p := &process{out: &output{w: os.Stdout}, environ: os.Environ, args: os.Args}
+	p := &process{in: os.Stdin, out: &output{w: os.Stdout}, environ: os.Environ, args: os.Args}
 	ctx, stop := context.WithCancelCause(context.Background())
 	defer stop(nil)
 	signals := make(chan os.Signal, 1) // one is enough to stop; a second one while stopping changes nothing
@@ -57,6 +58,7 @@ func orphaned(child *guard.Child, stop func(error)) {
 
 // process is what a command sees of the outside.
 type process struct {
+	in       io.Reader
 	out      *output   // data asked for; nothing else
 	err      io.Writer // everything a person reads
 	terminal bool      // err is a terminal

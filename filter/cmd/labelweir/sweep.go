@@ -19,8 +19,8 @@ import (
 
 func sweepCommand() command {
 	return command{
-		name: "sweep", usage: "FILE --label COLUMN --out FILE [FLAG...]",
-		brief: "judges every record of an Arrow file and writes it back tagged",
+		name: "sweep", usage: "FILE... --label COLUMN --out FILE [FLAG...]",
+		brief: "judges every record of a table and writes it back tagged",
 		about: `
 Every row comes back unchanged and in order, with weir_score (the probability that its label is wrong), weir_verdict,
 weir_implied, weir_margin, weir_reason and weir_snapshot appended. With --mode divert the near-certain wrong ones go to
@@ -70,6 +70,8 @@ func runSweep(ctx context.Context, p *process, args []string) error {
 		Chosen:   func(choice []table.Choice) { tellChoice(p, choice) },
 		Progress: bar.Show,
 		Marks:    p.marks,
+		In:       p.in,
+		Out:      p.out,
 	})
 	bar.Clear()
 	if err != nil {
@@ -87,11 +89,8 @@ func sweepSettings(p *process, args []string) (*config.Config, error) {
 	if err != nil {
 		return nil, err
 	}
-	if len(operands) > 1 {
-		return nil, usagef("%s: a sweep reads one file, and %s is named already", operands[1], operands[0])
-	}
-	if len(operands) == 1 {
-		l.Flag(operands[0], "input.file.path", operands[0])
+	if len(operands) > 0 {
+		l.Flag(operands[0], "input.file.path", strings.Join(operands, "\n"))
 	}
 	l.Environment(p.environ())
 	if name != "" {

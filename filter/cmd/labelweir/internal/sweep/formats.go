@@ -3,11 +3,12 @@ package sweep
 import (
 	"labelweir/connectors/arrowfile"
 	"labelweir/connectors/csv"
+	"labelweir/connectors/jsonlines"
 	"labelweir/connectors/parquet"
 	"labelweir/connectors/table"
 )
 
 // formats are the file formats that a sweep reads and writes.
 func formats() []table.Format {
-	return append(arrowfile.Formats(), parquet.Format(), csv.Format())
+	return append(arrowfile.Formats(), parquet.Format(), csv.Format(), jsonlines.Format())
 }

@@ -9,7 +9,6 @@ import (
 	"io"
 	"time"
 
-	"labelweir/connectors/arrowfile"
 	"labelweir/connectors/disk"
 	"labelweir/connectors/table"
 	"labelweir/filter"
@@ -23,6 +22,8 @@ type Watch struct {
 	Progress func(phase string, done, total int64) // from one goroutine at a time
 	Marks    *guard.Marks                          // where the sweep is, for who outlives it
 	Disk     disk.FS                               // where outputs go; nil: the machine's disk
+	In       io.Reader                             // standard input
+	Out      io.Writer                             // standard output
 	Learner  filter.Learner                        // nil: the real model
 	Now      func() time.Time                      // clock of the report's times; nil: time.Now
 }
@@ -31,13 +32,21 @@ type Watch struct {
 // names when all of them are whole and on the disk: snapshot, report, quarantine, and the tagged file last. When the
 // error is not nil, none stands there that was not there before.
 func Run(ctx context.Context, c *config.Config, w Watch) (*filter.Report, error) {
-	options := table.DefaultOptions()
-	options.Replace = c.Output.Replace
-	options.Mark = marker(w.Marks)
-	options.Disk = w.Disk
-	stamps := takeStamps(c.Input.File)
-	w.Marks.Enter(c.Input.File)
-	first, err := open(ctx, c, options)
+	files, closeInputs, err := inputs(c, w.In)
+	if err != nil {
+		return nil, err
+	}
+	defer closeInputs()
+	options := optionsOf(c, w)
+	unread, err := openUnreadable(c.Output.Unreadable, options)
+	if err != nil {
+		return nil, err
+	}
+	defer unread.drop()
+	options.Unreadable = unread.taker(false)
+	stamps := takeStamps(files)
+	w.Marks.Enter(c.Input.Title())
+	first, err := open(ctx, files, c.Record, options)
 	w.Marks.Leave()
 	if err != nil {
 		return nil, err
@@ -65,10 +74,13 @@ func Run(ctx context.Context, c *config.Config, w Watch) (*filter.Report, error)
 		w.Chosen(choice)
 	}
 	var last filter.Snapshot
+	readings := 0
 	s := filter.Sweep{
 		Config: c.Filter,
 		Open: func(context.Context) (filter.Source, error) {
-			source, err := openMarked(w.Marks, c.Input.File, func() (filter.Source, error) { return arrowfile.Open(c.Input.File, record, options) })
+			options.Unreadable = unread.taker(readings == 0)
+			readings++
+			source, err := openMarked(w.Marks, c.Input.Title(), func() (filter.Source, error) { return table.Open(files, record, options) })
 			return stamps.watch(source, err)
 		},
 		Sink: unplaced{sink},
@@ -87,8 +99,10 @@ func Run(ctx context.Context, c *config.Config, w Watch) (*filter.Report, error)
 		return nil, err
 	}
 	report.Fields = used(choice)
+	report.Rows.Unreadable += unread.count()
+	report.Rows.In += unread.count()
 	if report.Rows.In == 0 {
-		report.Notes = append(report.Notes, c.Input.File+" has no rows, so there was nothing to judge")
+		report.Notes = append(report.Notes, c.Input.Title()+" has no rows, so there was nothing to judge")
 	}
 	if last == nil {
 		if c.Output.Snapshot != "" {
@@ -102,18 +116,28 @@ func Run(ctx context.Context, c *config.Config, w Watch) (*filter.Report, error)
 	err = cmp.Or(
 		snapshotFile.Fill(func(w io.Writer) error { _, err := last.WriteTo(w); return err }),
 		reportFile.Fill(func(w io.Writer) error { return writeReport(w, report) }),
+		unread.finish(),
 		stamps.check())
 	if err != nil {
 		return nil, err
 	}
 	w.Marks.Phase("place")
-	return report, sink.CommitWith(ctx, snapshotFile, reportFile)
+	return report, sink.CommitWith(ctx, snapshotFile, reportFile, unread.target())
+}
+
+// optionsOf gives what files are read and written with.
+func optionsOf(c *config.Config, w Watch) table.Options {
+	options := table.DefaultOptions(formats()...)
+	options.InFormat, options.Delimiter = c.Input.Format, c.Input.Delimiter
+	options.OutFormat, options.Replace = c.Output.Format, c.Output.Replace
+	options.Mark, options.Disk, options.Pipe = marker(w.Marks), w.Disk, w.Out
+	return options
 }
 
 // open reads the input's beginning: the columns tell what there is to learn from, the first rows how the file is
 // compressed, which the output takes over.
-func open(ctx context.Context, c *config.Config, options table.Options) (*table.Source, error) {
-	source, err := arrowfile.Open(c.Input.File, c.Record, options)
+func open(ctx context.Context, files []table.Input, record filter.Record, options table.Options) (*table.Source, error) {
+	source, err := table.Open(files, record, options)
 	if err != nil {
 		return nil, err
 	}

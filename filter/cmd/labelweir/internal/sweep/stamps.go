@@ -18,12 +18,14 @@ type stamp struct {
 	info os.FileInfo // nil: it could not be looked at, and opening it will say why
 }
 
-// takeStamps looks at the files.
-func takeStamps(paths ...string) stamps {
-	s := make(stamps, len(paths))
-	for i, path := range paths {
-		info, _ := os.Stat(path)
-		s[i] = stamp{path, info}
+// takeStamps looks at the files; what came through a pipe can't change.
+func takeStamps(files []table.Input) stamps {
+	var s stamps
+	for _, f := range files {
+		if f.File == nil {
+			info, _ := os.Stat(f.Path)
+			s = append(s, stamp{f.Path, info})
+		}
 	}
 	return s
 }

@@ -11,6 +11,7 @@ import (
 
 // unreadable writes rows that can't be read as JSON lines, each once: an input may be read several times.
 type unreadable struct {
+	file *table.Target
 	buf  *bufio.Writer
 	rows int64
 }
@@ -25,12 +26,13 @@ type unreadableRow struct {
 	Bytes  []byte  `json:"bytes,omitempty"` // the same in base64, when it is no UTF-8
 }
 
-// newUnreadable writes into w; nil gives nil, with which the first row that can't be read is an error.
-func newUnreadable(w io.Writer) *unreadable {
-	if w == nil {
-		return nil
+// openUnreadable begins the file at path; path "" gives nil, with which the first row that can't be read is an error.
+func openUnreadable(path string, options table.Options) (*unreadable, error) {
+	t, err := table.NewTarget(path, options)
+	if err != nil || t == nil {
+		return nil, err
 	}
-	return &unreadable{buf: bufio.NewWriter(w)}
+	return &unreadable{file: t, buf: bufio.NewWriter(t)}, nil
 }
 
 // taker is what a reading is opened with: only the one that counts hands rows on.
@@ -64,4 +66,27 @@ func (u *unreadable) count() int64 {
 		return 0
 	}
 	return u.rows
+}
+
+// finish brings the rows to the disk.
+func (u *unreadable) finish() error {
+	if u == nil {
+		return nil
+	}
+	return u.file.Fill(func(io.Writer) error { return u.buf.Flush() })
+}
+
+// target is the file, for the commit.
+func (u *unreadable) target() *table.Target {
+	if u == nil {
+		return nil
+	}
+	return u.file
+}
+
+// drop removes the file where it was not committed.
+func (u *unreadable) drop() {
+	if u != nil {
+		u.file.Drop()
+	}
 }
