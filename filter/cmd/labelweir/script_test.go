@@ -31,6 +31,9 @@ func TestScripts(t *testing.T) {
 			"exits":   exits,
 			"mkarrow": mkarrow,
 			"apples":  apples,
+			"convert": convert,
+			"begins":  begins,
+			"spoil":   spoil,
 		},
 	})
 }

@@ -2,7 +2,6 @@ package sweep
 
 import (
 	"errors"
-	"fmt"
 	"io"
 	"io/fs"
 	"os"
@@ -54,7 +53,7 @@ func folder(path string, all bool) (list []table.Input, err error) {
 		}
 	}
 	if len(list) == 0 {
-		return nil, &table.Error{Path: path, What: fmt.Sprintf("none of the %d files in the folder has the ending of a format", len(entries)),
+		return nil, &table.Error{Path: path, What: "no file in the folder has the ending of a format",
 			Do: "name the files, or their format", Kind: table.ErrUnreadable}
 	}
 	return list, nil
