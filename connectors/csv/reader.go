@@ -97,6 +97,7 @@ func (r *reader) Next() (arrow.Record, error) {
 // fill collects rows for a record batch.
 func (r *reader) fill() (n int, err error) {
 	r.place.Line = r.rows.beyond
+	r.opt.Tell(r.place, "")
 	for size := 0; n < r.opt.Rows && size < batchBytes; {
 		ok, err := r.rows.next()
 		if !ok || err != nil {

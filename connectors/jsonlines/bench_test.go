@@ -33,7 +33,7 @@ func line(rows int) string {
 	return b.String()
 }
 
-const benchRows = 50_000
+const benchRows = 100_000
 
 // copyRows reads a table and writes it as it came, without tags.
 func copyRows(tb testing.TB, f table.File, peek int) {

@@ -112,6 +112,7 @@ func (r *reader) Next() (arrow.Record, error) {
 // fill collects lines for a record batch.
 func (r *reader) fill() (n int, err error) {
 	r.place.Line = r.lines.line + 1
+	r.opt.Tell(r.place, "")
 	for size := 0; n < r.opt.Rows && size < batchBytes; {
 		ok, err := r.lines.next()
 		if !ok || err != nil {

@@ -24,7 +24,7 @@ func TestNumbersAreThoseOfStrconv(t *testing.T) {
 		}
 		f, err := strconv.ParseFloat(s, 64)
 		want := err == nil && !math.IsNaN(f) && !math.IsInf(f, 0) && !contains(s, "xX_")
-		if got, ok := Number(b); ok != want || ok && got != f {
+		if got, ok := Number(b); ok != want || ok && math.Float64bits(got) != math.Float64bits(f) {
 			t.Fatalf("%q: got %v, %v, want %v, %v", b, got, ok, f, want)
 		}
 	}
@@ -123,5 +123,12 @@ func TestReadingACellAllocatesNothing(t *testing.T) {
 	var g Guess
 	if n := testing.AllocsPerRun(100, func() { Number(number); Moment(moment); Bool(number); g.Watch(number); g.Watch(moment) }); n != 0 {
 		t.Errorf("%v allocations", n)
+	}
+}
+
+func BenchmarkNumber(b *testing.B) {
+	number := []byte("71.5203")
+	for b.Loop() {
+		Number(number)
 	}
 }

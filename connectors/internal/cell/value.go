@@ -75,6 +75,9 @@ func Int(b []byte) (int64, bool) {
 // count, nor do numbers too large for a float64.
 func Number(b []byte) (float64, bool) {
 	b = trim(b)
+	if v, ok := short(b); ok {
+		return v, true
+	}
 	if len(b) == 0 {
 		return 0, false
 	}
@@ -85,6 +88,44 @@ func Number(b []byte) (float64, bool) {
 	}
 	v, err := strconv.ParseFloat(string(b), 64)
 	return v, err == nil
+}
+
+// powers of ten up to 15, never changed.
+var powers = [16]float64{1, 1e1, 1e2, 1e3, 1e4, 1e5, 1e6, 1e7, 1e8, 1e9, 1e10, 1e11, 1e12, 1e13, 1e14, 1e15}
+
+// short reads a number of at most 15 digits without an exponent. Digits and power of ten are then exact in a float64, and
+// so is their quotient's rounding (Clinger, How to read floating point numbers accurately, 1990).
+func short(b []byte) (float64, bool) {
+	if len(b) == 0 || len(b) > 17 {
+		return 0, false
+	}
+	negative := b[0] == '-'
+	if negative || b[0] == '+' {
+		b = b[1:]
+	}
+	mantissa, digits, point := uint64(0), 0, -1
+	for i, c := range b {
+		switch {
+		case c-'0' <= 9:
+			mantissa = 10*mantissa + uint64(c-'0')
+			digits++
+		case c == '.' && point < 0:
+			point = i
+		default:
+			return 0, false
+		}
+	}
+	if digits == 0 || digits > 15 {
+		return 0, false
+	}
+	v := float64(mantissa)
+	if point >= 0 {
+		v /= powers[digits-point]
+	}
+	if negative {
+		v = -v
+	}
+	return v, true
 }
 
 // Missing tells whether a cell says in words, or by being empty, that it has no value.
