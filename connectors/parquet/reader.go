@@ -5,6 +5,8 @@ import (
 	"errors"
 	"fmt"
 	"io"
+	"slices"
+	"unicode/utf8"
 
 	"github.com/apache/arrow/go/v16/arrow"
 	"github.com/apache/arrow/go/v16/arrow/array"
@@ -87,9 +89,17 @@ func (r *reader) open(f table.File) error {
 	if r.schema, err = r.fr.Schema(); err != nil {
 		return r.damaged("its schema can't be read", "", err)
 	}
+	if m := r.pf.MetaData().KeyValueMetadata(); !areText(m.Keys()) || !areText(m.Values()) {
+		return r.damaged("its metadata is not UTF-8", "", nil)
+	}
 	r.schema = tidied(r.schema, r.fr.Manifest.OriginSchema)
 	r.fixed = r.loosen()
 	return nil
+}
+
+// areText tells whether all of the list are UTF-8, as the format wants it.
+func areText(list []string) bool {
+	return !slices.ContainsFunc(list, func(s string) bool { return !utf8.ValidString(s) })
 }
 
 func (r *reader) damaged(what, column string, err error) error {
