@@ -129,7 +129,7 @@ func (o *outcome) survive(d damaged, in, out string) (fault string) {
 	runtime.ReadMemStats(&before)
 	began := time.Now()
 	var rows []table.Unreadable
-	err, trace := fenced(func() error {
+	trace, err := fenced(func() error {
 		return carry(in, d.base.label, out, func(u table.Unreadable) error { rows = append(rows, u); return nil })
 	})
 	o.slowest = max(o.slowest, time.Since(began))
@@ -162,7 +162,7 @@ func (o *outcome) judge(err error, d damaged, in, out string) (faults []string) 
 	if err == nil {
 		o.whole++
 		// What was written must be read again without a fault.
-		again, trace := fenced(func() error { return reread(out, d.base.label) })
+		trace, again := fenced(func() error { return reread(out, d.base.label) })
 		if missing != nil || again != nil || trace != "" {
 			faults = append(faults, fmt.Sprintf("copied, but the output is not well formed: %v %v %s", missing, again, trace))
 		}
@@ -191,11 +191,11 @@ func (o *outcome) judge(err error, d damaged, in, out string) (faults []string) 
 }
 
 // fenced runs do; trace tells of a panic.
-func fenced(do func() error) (err error, trace string) {
+func fenced(do func() error) (trace string, err error) {
 	defer func() {
 		if p := recover(); p != nil {
 			trace = fmt.Sprintf("panic: %v\n%s", p, debug.Stack())
 		}
 	}()
-	return do(), ""
+	return "", do()
 }
