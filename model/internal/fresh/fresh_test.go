@@ -65,48 +65,6 @@ func TestPackedForestSumsTheSameLeaves(t *testing.T) {
 	})
 }
 
-func TestDecayIsTheExponential(t *testing.T) {
-	k := &Kernel{Gamma: 1, Dim: 1, Landmarks: []float32{0}}
-	k.prepare()
-	for y := 0.0; y < 100; y += 0.00317 {
-		want := math.Exp(-float64(float32(y)))
-		if got := float64(k.decay(float32(y))); math.Abs(got-want) > 5e-6*want+1e-37 {
-			t.Fatalf("exp(−%v) is %v, got %v", y, want, got)
-		}
-	}
-	for y, want := range map[float64]float32{0: 1, -1e-6: 1, math.Inf(1): 0, 1e30: 0, math.NaN(): 1} {
-		if got := k.decay(float32(y)); got != want {
-			t.Errorf("at %v: %v, wanted %v", y, got, want)
-		}
-	}
-}
-
-func TestKernelValuesAreGaussian(t *testing.T) {
-	rng := rand.New(rand.NewPCG(2, 1))
-	k := &Kernel{Gamma: 0.7, Dim: 5}
-	for range 5 * 33 {
-		k.Landmarks = append(k.Landmarks, float32(rng.NormFloat64()))
-	}
-	k.prepare()
-	u, got := make([]float32, 6), make([]float32, 33)
-	for range 20 {
-		for i := range u {
-			u[i] = float32(rng.NormFloat64()) * float32(rng.IntN(2))
-		}
-		k.values(u, got)
-		for j, v := range got {
-			d2 := 0.0
-			for i := range 5 {
-				d := float64(u[i]) - float64(k.Landmarks[j*5+i])
-				d2 += d * d
-			}
-			if want := math.Exp(-0.7 * d2); math.Abs(float64(v)-want) > 2e-6 {
-				t.Fatalf("landmark %d: %v, wanted %v", j, v, want)
-			}
-		}
-	}
-}
-
 // machine has a vote and linear scorers of every design over three classes.
 func machine(t *testing.T) *Machine {
 	t.Helper()

@@ -1,12 +1,6 @@
 package fresh
 
-import (
-	"math"
-
-	"gonum.org/v1/gonum/blas/blas32"
-
-	"labelweir/model/internal/kernel"
-)
+import "labelweir/model/internal/kernel"
 
 // Kernel gives the Gaussian kernel values exp(−Gamma·‖u − z_j‖²) of a row u and landmarks z_j.
 type Kernel struct {
@@ -14,9 +8,9 @@ type Kernel struct {
 	Dim       int       // numbers of a row that are read
 	Landmarks []float32 // m·Dim
 
-	across []float32 // Dim·m: number i of every landmark
-	norm   []float32 // Gamma·‖z_j‖²
-	powers [pieces]uint32
+	across []float32   // −2·Gamma times the landmarks, as distancesPlain reads them
+	norm   []float32   // Gamma·‖z_j‖²
+	series [10]float32 // gauss
 }
 
 func packKernel(k *kernel.Map) Kernel {
@@ -28,58 +22,27 @@ func packKernel(k *kernel.Map) Kernel {
 // Size is the number of landmarks.
 func (k *Kernel) Size() int { return len(k.Landmarks) / max(k.Dim, 1) }
 
+// room is memory for the values of one row.
+func (k *Kernel) room() []float32 { return make([]float32, k.Size(), len(k.norm)) }
+
 // prepare fills what is derived from the exported fields.
 func (k *Kernel) prepare() {
-	m := k.Size()
-	k.across = make([]float32, len(k.Landmarks))
-	k.norm = make([]float32, m)
-	for j := range m {
+	n := (k.Size() + wide - 1) / wide * wide
+	k.across, k.norm, k.series = make([]float32, n*k.Dim), make([]float32, n), gauss()
+	for j := range k.Size() {
 		s := 0.0
 		for i, v := range k.Landmarks[j*k.Dim : (j+1)*k.Dim] {
-			k.across[i*m+j] = v
+			k.across[(j/wide*k.Dim+i)*wide+j%wide] = float32(-2 * k.Gamma * float64(v))
 			s += float64(v) * float64(v)
 		}
 		k.norm[j] = float32(k.Gamma * s)
 	}
-	for i := range k.powers {
-		k.powers[i] = math.Float32bits(float32(math.Exp2(-float64(i) / pieces)))
-	}
 }
 
-// values writes the kernel between u and every landmark. len(dst) = Size(). Cost O(Size·Dim), less where u has zeros.
-func (k *Kernel) values(u []float32, dst []float32) {
-	copy(dst, k.norm)
-	to := blas32.Vector{N: len(dst), Inc: 1, Data: dst}
-	gamma, uu := float32(k.Gamma), float32(0)
-	for i, v := range u[:k.Dim] {
-		if v == 0 {
-			continue
-		}
-		uu += v * v
-		blas32.Axpy(-2*gamma*v, blas32.Vector{N: len(dst), Inc: 1, Data: k.across[i*len(dst) : (i+1)*len(dst)]}, to)
-	}
-	uu *= gamma
-	for j, v := range dst {
-		dst[j] = k.decay(uu + v)
-	}
-}
-
-// pieces is the number of parts a power of two is cut into.
-const pieces = 64
-
-// decay is exp(−y) with a relative error below 5·10⁻⁶: a power of ½ from a table times a short series. Negative y, which only rounding
-// brings about, and NaN count as 0.
-func (k *Kernel) decay(y float32) float32 {
-	const last = 87 // exp(−87) is about the smallest float32 of full precision
-	if !(y > 0) {
-		return 1
-	}
-	if y > last {
-		return 0
-	}
-	t := y * (pieces / math.Ln2)
-	n := uint32(t)
-	r := (t - float32(n)) * (math.Ln2 / pieces)
-	p := math.Float32frombits(k.powers[n%pieces] - n/pieces<<23)
-	return p * (1 - r*(1-r*(0.5-r/6)))
+// values writes the kernel between u and every landmark to dst, which room made. Cost O(Size·Dim), less where u has
+// zeros.
+func (k *Kernel) values(u, dst []float32) {
+	u, dst = u[:k.Dim], dst[:len(k.norm)]
+	k.distances(dst, u)
+	k.decays(dst, float32(k.Gamma)*dot(u, u))
 }

@@ -33,7 +33,7 @@ func (m *Machine) NewScratch() *Scratch {
 		s.sums = append(s.sums, make([]float64, n*len(m.Forests[i].Low)))
 	}
 	for i := range m.Kernels {
-		s.smooth = append(s.smooth, make([]float32, m.Kernels[i].Size()))
+		s.smooth = append(s.smooth, m.Kernels[i].room())
 	}
 	return s
 }
