@@ -75,7 +75,7 @@ func TestDamagedFilesLoseNothing(t *testing.T) {
 	r := rand.New(rand.NewPCG(7, 8))
 	whole := []byte(strings.Repeat(apples[strings.IndexByte(apples, '\n')+1:], 10))
 	whole = append([]byte(apples), whole...)
-	for range 2_000 {
+	for range 1_000 {
 		b := bytes.Clone(whole)
 		for range 1 + r.IntN(4) {
 			i, n := r.IntN(len(b)-20), 1+r.IntN(20)
