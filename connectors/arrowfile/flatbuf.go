@@ -56,6 +56,35 @@ func (t fbTable) int64(i int) int64 {
 	return 0
 }
 
+// int16 is the two-byte field in slot i, or 0.
+func (t fbTable) int16(i int) int {
+	if p := t.at(i); p != 0 {
+		return int(int16(binary.LittleEndian.Uint16(t.b[p:])))
+	}
+	return 0
+}
+
+// int64s are the numbers in slot i.
+func (t fbTable) int64s(i int) []int64 {
+	pos, n := t.vector(i)
+	list := make([]int64, 0, min(n, len(t.b)/8))
+	for k := range n {
+		list = append(list, int64(binary.LittleEndian.Uint64(t.b[pos+8*k:])))
+	}
+	return list
+}
+
+// tables are the tables in slot i.
+func (t fbTable) tables(i int) []fbTable {
+	pos, n := t.vector(i)
+	list := make([]fbTable, 0, min(n, len(t.b)/4))
+	for k := range n {
+		p := pos + 4*k
+		list = append(list, fbTable{t.b, p + int(binary.LittleEndian.Uint32(t.b[p:]))})
+	}
+	return list
+}
+
 // table is the table that slot i points to.
 func (t fbTable) table(i int) (fbTable, bool) {
 	p := t.at(i)

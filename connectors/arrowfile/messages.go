@@ -57,6 +57,10 @@ type messages struct {
 	seen   int64  // byte behind the last message read
 	batch  int    // record batches handed out
 	at     int    // record batch being read, counted from 1
+	schema []byte // head of the schema message
+	head   []byte // head of the last message, as it was found
+
+	keep func(meta []byte) // see blame: changes the head of a message
 }
 
 var errNotArrow = errors.New("not Arrow IPC")
@@ -164,10 +168,17 @@ func (m *messages) Message() (*ipc.Message, error) {
 	if err != nil {
 		return nil, err
 	}
+	m.head = meta
 	root := fbRoot(meta)
 	n := root.int64(3)
 	if n < 0 || n > m.size-next {
 		return nil, fmt.Errorf("message of %d bytes at byte %d of %d", n, next, m.size)
+	}
+	if m.schema == nil {
+		m.schema = meta
+	}
+	if m.keep != nil {
+		m.keep(meta)
 	}
 	if err := m.check(root, n); err != nil {
 		return nil, err

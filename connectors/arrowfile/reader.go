@@ -78,7 +78,9 @@ func (r *reader) Next() (rec arrow.Record, err error) {
 	r.opt.Tell(table.Place{Path: r.path, Batch: r.msgs.batch + 1}, "")
 	if !r.rd.Next() {
 		if err := r.rd.Err(); err != nil {
-			return nil, r.damaged("the record batch can't be read", err)
+			e := r.damaged("the record batch can't be read", err).(*table.Error)
+			e.Column = r.blame()
+			return nil, e
 		}
 		if n := r.msgs.missing(); n > 0 {
 			return nil, r.damaged(fmt.Sprintf("%d record batches are missing", n), io.ErrUnexpectedEOF)

@@ -7,6 +7,7 @@ import (
 	"github.com/apache/arrow/go/v16/arrow"
 	"github.com/apache/arrow/go/v16/arrow/array"
 	"github.com/apache/arrow/go/v16/arrow/ipc"
+	"github.com/apache/arrow/go/v16/arrow/memory"
 
 	"labelweir/connectors/table"
 )
@@ -23,9 +24,11 @@ type writer struct {
 	wr   *ipc.Writer
 	mute *mute
 	bad  bool
+	mem  memory.Allocator
+
+	growers map[int]*grower // of a file, by the dictionary's column; nil for a stream
 
 	dicts []arrow.ArrayData // of the record batch written last
-	last  arrow.Record      // keeps dicts alive
 }
 
 func newWriter(w io.Writer, format Format, schema *arrow.Schema, opt table.WriteOptions) *writer {
@@ -37,8 +40,13 @@ func newWriter(w io.Writer, format Format, schema *arrow.Schema, opt table.Write
 	case Zstd:
 		opts = append(opts, ipc.WithZstd())
 	}
-	m := &mute{w: w}
-	return &writer{wr: ipc.NewWriterWithPayloadWriter(&payloads{w: m, format: format, meta: how.footer}, opts...), mute: m}
+	out := &writer{mute: &mute{w: w}, mem: opt.Memory}
+	if format == File {
+		opts = append(opts, ipc.WithDictionaryDeltas(true))
+		out.growers = map[int]*grower{}
+	}
+	out.wr = ipc.NewWriterWithPayloadWriter(&payloads{w: out.mute, format: format, meta: how.footer}, opts...)
+	return out
 }
 
 var errBlurredDictionary = errors.New("a dictionary of floating-point numbers is replaced by one that differs by less than 0.00001, " +
@@ -47,25 +55,36 @@ var errBlurredDictionary = errors.New("a dictionary of floating-point numbers is
 // Write implements table.Writer.
 func (w *writer) Write(rec arrow.Record) error {
 	w.bad = true // unless all goes well
+	if w.growers != nil {
+		var err error
+		if rec, err = w.growing(rec); err != nil {
+			return err
+		}
+		defer rec.Release()
+	}
 	next := dictionaries(rec)
-	if w.last != nil && blurred(w.dicts, next) {
+	if blurred(w.dicts, next) {
 		return errBlurredDictionary
 	}
 	if err := w.wr.Write(rec); err != nil {
 		return err
 	}
 	w.bad = false
-	if len(next) > 0 {
-		rec.Retain()
-		w.forget()
-		w.last, w.dicts = rec, next
+	for _, d := range next {
+		d.Retain()
 	}
+	w.forget()
+	w.dicts = next
 	return nil
 }
 
 // Close implements table.Writer.
 func (w *writer) Close() error {
 	w.forget()
+	for _, g := range w.growers {
+		g.release()
+	}
+	w.growers = nil
 	if w.bad {
 		w.mute.off = true // arrow's writer gives its dictionaries back in Close only
 	}
@@ -73,10 +92,10 @@ func (w *writer) Close() error {
 }
 
 func (w *writer) forget() {
-	if w.last != nil {
-		w.last.Release()
-		w.last, w.dicts = nil, nil
+	for _, d := range w.dicts {
+		d.Release()
 	}
+	w.dicts = nil
 }
 
 // mute passes bytes on until it is off.
