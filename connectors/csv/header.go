@@ -3,6 +3,7 @@ package csv
 import (
 	"bytes"
 	"fmt"
+	"slices"
 	"strings"
 	"unicode/utf8"
 
@@ -58,7 +59,7 @@ func (h *header) first(r *rows) error {
 	case !ok:
 		return r.fault("has no rows, not even a header", "check the step that wrote it", nil)
 	case r.reason != "":
-		return r.fault("the header "+r.reason, "write the names of the columns into the first row", nil)
+		return r.fault("the header can't be read: "+r.reason, "write the names of the columns into the first row", nil)
 	case r.row.Count > mostColumns:
 		return r.fault(fmt.Sprintf("the header has %d cells, more than %d", r.row.Count, mostColumns), "check that "+quoted(r.delimiter)+" is its delimiter", nil)
 	}
@@ -86,42 +87,58 @@ const peekBytes = 64 << 20
 
 // infer sets the types: those of like for the columns that it has, those that the first rows allow for the others.
 func (h *header) infer(r *rows, opt table.ReadOptions) error {
-	h.types = make([]arrow.DataType, len(h.names))
-	known := likes(h.names, opt.Like)
-	open := false
-	for i, dt := range known {
-		h.types[i] = dt
-		open = open || dt == nil
-	}
-	if !open {
+	h.types = likes(h.names, opt.Like)
+	if !slices.Contains(h.types, nil) {
 		return nil
 	}
-	guesses, foreign := make([]cell.Guess, len(h.names)), make([]bool, len(h.names))
-	for left := opt.Peek; left > 0 && r.feed.Offset() < h.end+peekBytes; {
+	guesses, err := h.peek(r, opt.Peek)
+	if err != nil {
+		return err
+	}
+	for i, g := range guesses {
+		if h.types[i] == nil {
+			h.types[i] = typeOf(g.Type(), g.foreign)
+		}
+	}
+	return nil
+}
+
+// guess is what the first cells of a column can mean, and whether some are no UTF-8.
+type guess struct {
+	cell.Guess
+	foreign bool
+}
+
+// peek looks at the first rows that can be read. When there are rows but none of them can be, that is an error: most
+// often it has another delimiter.
+func (h *header) peek(r *rows, most int) ([]guess, error) {
+	guesses := make([]guess, len(h.names))
+	var first error
+	read := 0
+	for read < most && r.feed.Offset() < h.end+peekBytes {
 		ok, err := r.next()
 		if err != nil {
-			return err
+			return nil, err
 		}
 		if !ok {
 			break
 		}
 		if r.reason != "" {
+			if first == nil {
+				first = r.fault("no row behind the header can be read; this one "+r.reason, "check that "+quoted(r.delimiter)+" is the delimiter", nil)
+			}
 			continue
 		}
-		left--
+		read++
 		for i := range guesses {
-			if h.types[i] == nil {
-				guesses[i].Watch(r.cell(i))
-				foreign[i] = foreign[i] || !utf8.Valid(r.cell(i))
-			}
+			guesses[i].Watch(r.cell(i))
+			guesses[i].foreign = guesses[i].foreign || !utf8.Valid(r.cell(i))
 		}
 	}
-	for i := range guesses {
-		if h.types[i] == nil {
-			h.types[i] = typeOf(guesses[i].Type(), foreign[i])
-		}
+	if read == 0 {
+		return guesses, first
 	}
-	return nil
+	return guesses, nil
 }
 
 func typeOf(means arrow.DataType, foreign bool) arrow.DataType {

@@ -137,7 +137,7 @@ func (r *reader) setAside() error {
 	u := r.rows.unreadable()
 	if r.opt.Unreadable == nil {
 		r.place.Line = u.Line
-		return r.rows.fault("the row "+u.Reason, "mend the row, or name an output for unreadable rows", nil)
+		return r.rows.fault("the row can't be read: "+u.Reason, "mend the row, or name an output for unreadable rows", nil)
 	}
 	return r.opt.Unreadable(u)
 }

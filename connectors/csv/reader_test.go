@@ -51,7 +51,7 @@ func TestRowsThatCantBeReadAreSetAsideAndTheRestGoesOn(t *testing.T) {
 
 func TestARowThatCantBeReadIsAnErrorWhenNobodyTakesIt(t *testing.T) {
 	_, _, err := content(t, "a,b\n1,2\n3\n", options(t))
-	const want = `apples.csv: line 3: the row has 1 cell, the header has 2; mend the row, or name an output for unreadable rows`
+	const want = `apples.csv: line 3: the row can't be read: has 1 cell, the header has 2; mend the row, or name an output for unreadable rows`
 	if !errors.Is(err, table.ErrUnreadable) || err.Error() != want {
 		t.Errorf("got %v\nwant %s", err, want)
 	}
@@ -125,7 +125,8 @@ func TestFilesThatAreNoCSV(t *testing.T) {
 		{"\n\n", "apples.csv: line 3: has no rows, not even a header; check the step that wrote it"},
 		{"\xff\xfea\x00", "apples.csv: is UTF-16 text, not UTF-8; convert it to CSV text in UTF-8 first"},
 		{"a,\x00\n", "apples.csv: has zero bytes, so it is no text; convert it to CSV text in UTF-8 first"},
-		{"a,\"b\n", "apples.csv: line 1: the header cell 2 opens a quote that is never closed; write the names of the columns into the first row"},
+		{"a,\"b\n", "apples.csv: line 1: the header can't be read: cell 2 opens a quote that is never closed; write the names of the columns into the first row"},
+		{"a,b,c\n1;2\n3;4\n", `apples.csv: line 2: no row behind the header can be read; this one has 1 cell, the header has 3; check that "," is the delimiter`},
 		{"a,\xff\n", "apples.csv: line 1: the name of column 2 is not UTF-8 text; convert the file to UTF-8"},
 	} {
 		if _, err := open(file(c.text), options(t)); err == nil || err.Error() != c.want || !errors.Is(err, table.ErrUnreadable) {
