@@ -38,6 +38,39 @@ func (m *messages) check(root fbTable, body int64) error {
 	return nil
 }
 
+// unpackable looks at what the compressed buffers of a record or dictionary message say they unpack to, for so much is
+// allocated. One byte of LZ4 stands for at most 255, and four of Zstandard for a block of 128 KiB (RFC 8878, 3.1.1.2).
+func unpackable(root fbTable, body []byte) error {
+	if kind := root.byte(1, 0); kind != headerRecord && kind != headerDictionary {
+		return nil
+	}
+	rec, ok := batchTable(root)
+	if !ok {
+		return nil
+	}
+	how, packed := rec.table(3)
+	if !packed {
+		return nil
+	}
+	ratio := int64([...]int{255, 128 << 10 / 4}[how.byte(0, 0)])
+	pos, n := rec.vector(2)
+	for i := range n {
+		at := rec.b[pos+16*i:]
+		off, size := int64(binary.LittleEndian.Uint64(at)), int64(binary.LittleEndian.Uint64(at[8:]))
+		if size == 0 {
+			continue
+		}
+		if size < 8 {
+			return fmt.Errorf("buffer %d of %d bytes is too short to be compressed", i, size)
+		}
+		full := int64(binary.LittleEndian.Uint64(body[off:]))
+		if full < -1 || full > 128<<10+ratio*(size-8) { // −1: it is not compressed after all
+			return fmt.Errorf("buffer %d of %d bytes can't unpack to %d", i, size, full)
+		}
+	}
+	return nil
+}
+
 // A schema has at most so many fields, nested so deep: arrow/go reads 64 levels.
 const (
 	mostFields = 1 << 20

@@ -186,6 +186,9 @@ func (m *messages) Message() (*ipc.Message, error) {
 	if err := m.readBody(next, int(n)); err != nil {
 		return nil, err
 	}
+	if err := unpackable(root, m.body); err != nil {
+		return nil, err
+	}
 	m.Release()
 	m.pos, m.seen = next+n, next+n
 	head := memory.NewBufferBytes(meta)

@@ -1,0 +1,173 @@
+package arrowfile
+
+import (
+	"encoding/binary"
+	"slices"
+	"sort"
+
+	"github.com/apache/arrow/go/v16/arrow"
+	"github.com/apache/arrow/go/v16/arrow/ipc"
+	"github.com/apache/arrow/go/v16/arrow/memory"
+
+	"labelweir/connectors/internal/capped"
+)
+
+// blame finds the column at which reading a record batch fails, for the message to name; empty when it can't be told.
+// Arrow reads columns in order, so that a batch without its columns from k on fails only when the faulty one is among the
+// first k. It costs some readings of the file up to that batch, of which all are thrown away.
+func (r *reader) blame() (column string) {
+	defer func() {
+		if recover() != nil { // the batch's head makes no sense: then no column does
+			column = ""
+		}
+	}()
+	schema := r.rd.Schema()
+	if id, ok := r.msgs.dictionaryAtFault(); ok {
+		return columnOfDictionary(r.msgs.schema, schema, id)
+	}
+	if r.msgs.recordAtFault() == nil {
+		return ""
+	}
+	n := schema.NumFields()
+	k := sort.Search(n+1, func(k int) bool { return r.failsWith(k) })
+	if k == 0 || k > n {
+		return ""
+	}
+	return schema.Field(k - 1).Name
+}
+
+// failsWith tells whether the record batch at fault can't be read even without its columns from k on.
+func (r *reader) failsWith(k int) (fails bool) {
+	defer func() {
+		if recover() != nil {
+			fails = true
+		}
+	}()
+	m, err := newMessages(r.msgs.r, r.msgs.size)
+	if err != nil {
+		return true
+	}
+	m.keep = func(meta []byte) {
+		switch {
+		case fbRoot(meta).byte(1, 0) != headerRecord:
+		case m.batch+1 < r.msgs.at: // read already, and only in the way here
+			empty(meta, r.rd.Schema(), 0)
+		default:
+			empty(meta, r.rd.Schema(), k)
+		}
+	}
+	rd, err := ipc.NewReaderFromMessageReader(m, ipc.WithAllocator(capped.New(memory.NewGoAllocator(), m.size)))
+	if err != nil {
+		return true
+	}
+	defer rd.Release()
+	for range r.msgs.at {
+		if !rd.Next() {
+			return true
+		}
+	}
+	return false
+}
+
+// empty takes the columns from k on out of the head of a record batch: they have no rows, and their buffers no bytes. The
+// batch has no rows either, for arrow refuses columns that are shorter.
+func empty(meta []byte, schema *arrow.Schema, k int) {
+	le := binary.LittleEndian
+	root := fbRoot(meta)
+	rec, _ := root.table(2)
+	if p := rec.at(0); p != 0 {
+		le.PutUint64(rec.b[p:], 0)
+	}
+	c := share{old: root.int16(0) < 4, views: rec.int64s(4)}
+	for _, f := range schema.Fields()[:k] {
+		c.count(f.Type)
+	}
+	for _, list := range []struct{ slot, from, at int }{{1, c.nodes, 0}, {2, c.buffers, 8}} {
+		pos, n := rec.vector(list.slot)
+		for i := list.from; i < n; i++ {
+			clear(rec.b[pos+16*i+list.at : pos+16*i+16]) // a node's rows and nulls; a buffer's length
+		}
+	}
+}
+
+// share adds up how many field nodes and buffers of a record batch columns take, as the format has them.
+type share struct {
+	old            bool    // before version 5: unions have a bitmap of nulls
+	views          []int64 // buffers of each column of views, in turn
+	nodes, buffers int
+}
+
+func (c *share) count(dt arrow.DataType) {
+	if ext, ok := dt.(arrow.ExtensionType); ok {
+		c.count(ext.StorageType())
+		return
+	}
+	c.nodes++
+	switch dt := dt.(type) {
+	case *arrow.NullType, *arrow.RunEndEncodedType:
+	case *arrow.BinaryType, *arrow.StringType, *arrow.LargeStringType, *arrow.LargeBinaryType, *arrow.ListViewType, *arrow.LargeListViewType:
+		c.buffers += 3
+	case arrow.BinaryViewDataType:
+		c.buffers += 2 + int(c.views[0])
+		c.views = c.views[1:]
+	case *arrow.FixedSizeListType, *arrow.StructType:
+		c.buffers++
+	case arrow.UnionType:
+		c.buffers++
+		if dt.Mode() == arrow.DenseMode {
+			c.buffers++
+		}
+		if c.old {
+			c.buffers++
+		}
+	default:
+		c.buffers += 2
+	}
+	if _, ok := dt.(*arrow.DictionaryType); ok {
+		return // its values come in messages of their own
+	}
+	if nested, ok := dt.(arrow.NestedType); ok {
+		for _, f := range nested.Fields() {
+			c.count(f.Type)
+		}
+	}
+}
+
+// dictionaryAtFault is the number of the dictionary that was being read last.
+func (m *messages) dictionaryAtFault() (id int64, ok bool) {
+	if m.head == nil || fbRoot(m.head).byte(1, 0) != headerDictionary {
+		return 0, false
+	}
+	t, ok := fbRoot(m.head).table(2)
+	return t.int64(0), ok
+}
+
+// recordAtFault is the head of the record batch that was being read last.
+func (m *messages) recordAtFault() []byte {
+	if m.head == nil || fbRoot(m.head).byte(1, 0) != headerRecord {
+		return nil
+	}
+	return m.head
+}
+
+// columnOfDictionary is the column, by the head of the schema message, in which the dictionary of that number is used.
+func columnOfDictionary(head []byte, schema *arrow.Schema, id int64) string {
+	t, ok := fbRoot(head).table(2)
+	if !ok {
+		return ""
+	}
+	for i, f := range t.tables(1) {
+		if usesDictionary(f, id, 0) && i < schema.NumFields() {
+			return schema.Field(i).Name
+		}
+	}
+	return ""
+}
+
+// usesDictionary looks at a Field table and its children.
+func usesDictionary(f fbTable, id int64, depth int) bool {
+	if d, ok := f.table(4); ok && d.int64(0) == id {
+		return true
+	}
+	return depth < mostDepth && slices.ContainsFunc(f.tables(5), func(c fbTable) bool { return usesDictionary(c, id, depth+1) })
+}
