@@ -82,10 +82,10 @@ func empty(meta []byte, schema *arrow.Schema, k int) {
 	for _, f := range schema.Fields()[:k] {
 		c.count(f.Type)
 	}
-	for _, list := range []struct{ slot, from, at int }{{1, c.nodes, 0}, {2, c.buffers, 8}} {
+	for _, list := range []struct{ slot, from int }{{1, c.nodes}, {2, c.buffers}} {
 		pos, n := rec.vector(list.slot)
 		for i := list.from; i < n; i++ {
-			clear(rec.b[pos+16*i+list.at : pos+16*i+16]) // a node's rows and nulls; a buffer's length
+			clear(rec.b[pos+16*i : pos+16*i+16]) // a node's rows and nulls, or a buffer's place and length
 		}
 	}
 }
