@@ -25,6 +25,7 @@ type Source struct {
 	labels, sources *coder
 	levels          []*coder // one a feature, nil unless Category
 
+	trays  trays
 	cur    arrow.Record // record batch being cut
 	at     int64        // rows of it handed out
 	row    int64        // rows handed out in all
@@ -197,41 +198,56 @@ func (s *Source) batch(part arrow.Record) (b *filter.Batch, err error) {
 			b, err = nil, s.in.damaged("its values can't be read", Caught(p))
 		}
 	}()
-	n := int(part.NumRows())
-	t := &model.Table{Keys: make([]uint64, n), Columns: make([]model.Column, len(s.plan.features))}
-	for i := range t.Keys {
-		t.Keys[i] = model.Key(s.row + int64(i))
-	}
-	s.mark(s.plan.label)
-	if t.Labels, err = s.codes(s.labels, part, s.plan.label); err != nil {
+	own := s.trays.get(len(s.plan.features))
+	if err := s.fill(own, part); err != nil {
 		return nil, err
 	}
-	t.Classes = s.labels.list()
-	if s.plan.source >= 0 {
-		if t.Sources, err = s.codes(s.sources, part, s.plan.source); err != nil {
-			return nil, err
-		}
-		t.SourceNames = s.sources.list()
-	}
-	for i := range s.plan.features {
-		s.mark(s.plan.features[i].index)
-		if t.Columns[i], err = s.column(i, part); err != nil {
-			return nil, err
-		}
-	}
-	b = &filter.Batch{First: s.row, Table: t, Payload: part}
+	table := own.table // the batch's own, for the tray may serve another one while somebody looks at this
+	table.Columns = slices.Clone(table.Columns)
+	b = &filter.Batch{First: s.row, Table: &table, Payload: part}
 	if s.plan.time >= 0 {
-		if b.Times, err = appendTimes(make([]int64, 0, n), part.Column(s.plan.time)); err != nil {
-			return nil, s.valueError(s.plan.time, 0, err)
-		}
+		b.Times = own.times
 	}
 	var given atomic.Bool
 	b.Release = func() {
 		if given.CompareAndSwap(false, true) {
 			part.Release()
+			s.trays.put(own)
 		}
 	}
 	return b, nil
+}
+
+// fill reads the columns in use out of a slice of a record batch.
+func (s *Source) fill(own *tray, part arrow.Record) (err error) {
+	n, t := int(part.NumRows()), &own.table
+	t.Keys = emptied(t.Keys, n)
+	for i := range n {
+		t.Keys = append(t.Keys, model.Key(s.row+int64(i)))
+	}
+	s.mark(s.plan.label)
+	if t.Labels, err = s.codes(s.labels, t.Labels, part, s.plan.label); err != nil {
+		return err
+	}
+	t.Classes = s.labels.list()
+	if s.plan.source >= 0 {
+		if t.Sources, err = s.codes(s.sources, t.Sources, part, s.plan.source); err != nil {
+			return err
+		}
+		t.SourceNames = s.sources.list()
+	}
+	for i := range s.plan.features {
+		s.mark(s.plan.features[i].index)
+		if err = s.column(i, &t.Columns[i], part); err != nil {
+			return err
+		}
+	}
+	if s.plan.time >= 0 {
+		if own.times, err = appendTimes(emptied(own.times, n), part.Column(s.plan.time)); err != nil {
+			return s.valueError(s.plan.time, 0, err)
+		}
+	}
+	return nil
 }
 
 // mark tells which column is read now.
@@ -242,30 +258,28 @@ func (s *Source) mark(index int) {
 }
 
 // column reads one feature.
-func (s *Source) column(i int, part arrow.Record) (model.Column, error) {
+func (s *Source) column(i int, col *model.Column, part arrow.Record) (err error) {
 	f := s.plan.features[i]
-	col := model.Column{Name: f.Path, Kind: f.Kind, Size: f.Size}
-	var err error
+	col.Name, col.Kind, col.Size = f.Path, f.Kind, f.Size
 	switch arr := part.Column(f.index); f.Kind {
 	case model.Number:
-		col.Values, err = appendNumbers(make([]float64, 0, arr.Len()), arr)
+		col.Values, err = appendNumbers(emptied(col.Values, arr.Len()), arr)
 	case model.Vector:
-		col.Values, err = appendVectors(make([]float64, 0, arr.Len()*f.Size), arr)
+		col.Values, err = appendVectors(emptied(col.Values, arr.Len()*f.Size), arr)
 	case model.Category:
-		if col.Codes, err = s.codes(s.levels[i], part, f.index); err != nil {
-			return col, err
-		}
+		col.Codes, err = s.codes(s.levels[i], col.Codes, part, f.index)
 		col.Levels = s.levels[i].list()
+		return err
 	}
 	if err != nil {
-		return col, s.valueError(f.index, 0, err)
+		return s.valueError(f.index, 0, err)
 	}
-	return col, nil
+	return nil
 }
 
-// codes reads a column of names.
-func (s *Source) codes(c *coder, part arrow.Record, index int) ([]int32, error) {
-	codes, bad, err := c.append(make([]int32, 0, part.NumRows()), part.Column(index))
+// codes reads a column of names into the memory of dst.
+func (s *Source) codes(c *coder, dst []int32, part arrow.Record, index int) ([]int32, error) {
+	codes, bad, err := c.append(emptied(dst, int(part.NumRows())), part.Column(index))
 	if err != nil {
 		return nil, s.valueError(index, bad, err)
 	}
