@@ -6,6 +6,8 @@ import (
 	"strings"
 	"testing"
 
+	"github.com/apache/arrow/go/v16/arrow"
+
 	"labelweir/connectors/table"
 )
 
@@ -183,5 +185,40 @@ func TestPlaceAndProgress(t *testing.T) {
 		if rd.Place().Line != want.line || done != want.done || size != 16 {
 			t.Errorf("line %d, %d of %d bytes, want %+v", rd.Place().Line, done, size, want)
 		}
+	}
+}
+
+// broken is a file that can be read up to a byte, and no further.
+type broken struct {
+	text string
+	upTo int64
+}
+
+var errBroken = errors.New("input/output error")
+
+func (b broken) ReadAt(p []byte, at int64) (int, error) {
+	if at+int64(len(p)) > b.upTo {
+		return copy(p, b.text[min(at, b.upTo):b.upTo]), errBroken
+	}
+	return copy(p, b.text[at:]), nil
+}
+
+func TestAFaultOfTheDiskIsAnErrorWithItsLine(t *testing.T) {
+	text := "a,b\n" + strings.Repeat("1,2\n", 200_000)
+	opt := options(t)
+	opt.Peek = 10
+	rd := must(open(table.File{ReaderAt: broken{text, 300_000}, Path: "apples.csv", Size: int64(len(text))}, opt))
+	var err error
+	for err == nil {
+		var rec arrow.Record
+		if rec, err = rd.Next(); err == nil {
+			rec.Release()
+		}
+	}
+	if want := "apples.csv: line 65538: can't be read: input/output error"; !errors.Is(err, errBroken) || !errors.Is(err, table.ErrUnreadable) || err.Error() != want {
+		t.Errorf("got %v, want %s", err, want)
+	}
+	if _, err := open(table.File{ReaderAt: broken{text, 0}, Path: "apples.csv", Size: int64(len(text))}, opt); !errors.Is(err, errBroken) {
+		t.Errorf("got %v", err)
 	}
 }

@@ -200,3 +200,32 @@ func TestRecordBatchesOfManyValuesHaveFewRows(t *testing.T) {
 		t.Errorf("%d rows, %v", rows, err)
 	}
 }
+
+// broken is a file that can be read up to a byte, and no further.
+type broken struct {
+	text string
+	upTo int64
+}
+
+var errBroken = errors.New("input/output error")
+
+func (b broken) ReadAt(p []byte, at int64) (int, error) {
+	if at+int64(len(p)) > b.upTo {
+		return copy(p, b.text[min(at, b.upTo):b.upTo]), errBroken
+	}
+	return copy(p, b.text[at:]), nil
+}
+
+func TestAFaultOfTheDiskIsAnErrorWithItsLine(t *testing.T) {
+	text := strings.Repeat("{\"a\":1}\n", 100_000)
+	opt := options(t)
+	opt.Peek = 10
+	rd := must(open(table.File{ReaderAt: broken{text, 300_000}, Path: "apples.jsonl", Size: int64(len(text))}, opt))
+	err := each(t, rd, func(arrow.Record) {})
+	if want := "apples.jsonl: line 32769: can't be read: input/output error"; !errors.Is(err, errBroken) || !errors.Is(err, table.ErrUnreadable) || err == nil || err.Error() != want {
+		t.Errorf("got %v, want %s", err, want)
+	}
+	if _, err := open(table.File{ReaderAt: broken{text, 0}, Path: "apples.jsonl", Size: int64(len(text))}, opt); !errors.Is(err, errBroken) {
+		t.Errorf("got %v", err)
+	}
+}
