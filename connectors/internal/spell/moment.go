@@ -14,6 +14,9 @@ const (
 	localLayout = dateLayout + "T" + clockLayout
 	zonedLayout = localLayout + "Z07:00"
 	daySeconds  = 24 * 3600
+
+	// From 0000-01-01 to 9999-12-31, in seconds since 1970: RFC 3339 has no other years.
+	firstSecond, lastSecond = -62_167_219_200, 253_402_300_799
 )
 
 // moment is the speller of an array of timestamps, dates or times of day, nil for another.
@@ -24,7 +27,7 @@ func moment(arr arrow.Array) Speller {
 	case *array.Date32:
 		v := a.Date32Values()
 		return func(dst []byte, i int) ([]byte, bool) {
-			return time.Unix(int64(v[i])*daySeconds, 0).UTC().AppendFormat(dst, dateLayout), false
+			return at(dst, int64(v[i])*daySeconds, 0, int64(v[i]), time.UTC, dateLayout), false
 		}
 	case *array.Date64:
 		v := a.Date64Values()
@@ -33,7 +36,7 @@ func moment(arr arrow.Array) Speller {
 			if v[i]%(1000*daySeconds) != 0 {
 				layout = localLayout
 			}
-			return time.UnixMilli(int64(v[i])).UTC().AppendFormat(dst, layout), false
+			return at(dst, int64(v[i])/1000, int64(v[i])%1000*1e6, int64(v[i]), time.UTC, layout), false
 		}
 	case *array.Time32:
 		v, unit := a.Time32Values(), int64(a.DataType().(*arrow.Time32Type).Unit.Multiplier())
@@ -58,8 +61,21 @@ func timestamp(a *array.Timestamp) Speller {
 	perSecond := int64(time.Second / dt.Unit.Multiplier())
 	return func(dst []byte, i int) ([]byte, bool) {
 		s, rest := int64(v[i])/perSecond, int64(v[i])%perSecond
-		return time.Unix(s, rest*int64(dt.Unit.Multiplier())).In(zone).AppendFormat(dst, layout), false
+		return at(dst, s, rest*int64(dt.Unit.Multiplier()), int64(v[i]), zone, layout), false
 	}
+}
+
+// at appends a moment, or its count of units when the format has no words for it. Where the zone is off by seconds, as
+// before about 1900, it is UTC.
+func at(dst []byte, seconds, nanos, count int64, zone *time.Location, layout string) []byte {
+	if seconds <= firstSecond+daySeconds || seconds >= lastSecond-daySeconds { // a day for the zone
+		return strconv.AppendInt(dst, count, 10)
+	}
+	t := time.Unix(seconds, nanos).In(zone)
+	if _, offset := t.Zone(); offset%60 != 0 {
+		t = t.UTC()
+	}
+	return t.AppendFormat(dst, layout)
 }
 
 // clock appends a time of day; counts beyond a day, which mean none, stay counts.

@@ -8,6 +8,7 @@
 //	binary              base64 with padding (RFC 4648, section 4)
 //	timestamps          RFC 3339 in their zone; those without a zone have none here either
 //	dates, times of day 2026-05-01, 07:30:00.25
+//	other years         moments outside of the years 0 to 9999, which RFC 3339 has not: their count of units
 //	durations           their count of units
 //	lists, vectors      JSON arrays
 //	structs             JSON objects

@@ -8,6 +8,7 @@ import (
 	"strconv"
 	"strings"
 	"testing"
+	"time"
 
 	"github.com/apache/arrow/go/v16/arrow"
 	"github.com/apache/arrow/go/v16/arrow/array"
@@ -89,6 +90,38 @@ func TestValues(t *testing.T) {
 			rest := array.NewSlice(arr, 1, n)
 			if _, want, _ := strings.Cut(c.json, " "); c.dt.ID() != arrow.STRUCT && spelled(t, rest, true) != want {
 				t.Errorf("%s: a slice gives %s, want %s", c.dt, spelled(t, rest, true), want)
+			}
+		}
+	}
+}
+
+// Every moment that has a text is the one that the text means, in any zone; the others stay counts.
+func TestMomentsReadBackTheSame(t *testing.T) {
+	r := rand.New(rand.NewPCG(5, 6))
+	for _, zone := range []string{"UTC", "Europe/Berlin", "-09:30", "Africa/Monrovia", "no/where"} {
+		for _, unit := range []arrow.TimeUnit{arrow.Second, arrow.Millisecond, arrow.Microsecond, arrow.Nanosecond} {
+			b := array.NewTimestampBuilder(memory.DefaultAllocator, &arrow.TimestampType{Unit: unit, TimeZone: zone})
+			for range 500 {
+				b.Append(arrow.Timestamp(int64(r.Uint64()) >> r.IntN(40)))
+			}
+			arr := b.NewArray().(*array.Timestamp)
+			s, err := Plain(arr)
+			if err != nil {
+				t.Fatal(err)
+			}
+			for i := range arr.Len() {
+				text, _ := s(nil, i)
+				count := int64(arr.Value(i))
+				if n, err := strconv.ParseInt(string(text), 10, 64); err == nil {
+					if year := time.Unix(count/int64(time.Second/unit.Multiplier()), 0).UTC().Year(); n != count || year > 0 && year < 9999 {
+						t.Fatalf("%d %s: got %s in year %d", count, unit, text, year)
+					}
+					continue
+				}
+				back, err := time.Parse(time.RFC3339Nano, string(text))
+				if err != nil || !back.Equal(arr.Value(i).ToTime(unit)) {
+					t.Fatalf("%d %s in %s: got %s, %v", count, unit, zone, text, err)
+				}
 			}
 		}
 	}
