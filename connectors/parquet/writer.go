@@ -79,11 +79,9 @@ func newWriter(w io.Writer, schema *arrow.Schema, opt table.WriteOptions) (*writ
 	for path, c := range how.columns {
 		props = append(props, parquet.WithCompressionFor(path, c.codec), parquet.WithDictionaryFor(path, c.dictionary))
 	}
-	if !same {
-		for _, f := range schema.Fields() { // values that hardly ever repeat
-			if arrow.IsFloating(f.Type.ID()) {
-				props = append(props, parquet.WithDictionaryFor(f.Name, false))
-			}
+	for _, f := range schema.Fields() {
+		if _, known := how.columns[f.Name]; !known && !dictionaryPays(f, how.codec) {
+			props = append(props, parquet.WithDictionaryFor(f.Name, false))
 		}
 	}
 	pq, aq := parquet.NewWriterProperties(props...), pqarrow.NewArrowWriterProperties(pqarrow.WithAllocator(opt.Memory))
@@ -96,6 +94,13 @@ func newWriter(w io.Writer, schema *arrow.Schema, opt table.WriteOptions) (*writ
 		return nil, err
 	}
 	return wr, wr.describe(schema, how.footer)
+}
+
+// dictionaryPays tells whether a column that the input does not have is written with a dictionary. Floating-point numbers
+// hardly ever repeat; the text of the tags does, but the library makes an object of each value that it looks up, and any
+// compression finds the same.
+func dictionaryPays(f arrow.Field, codec compress.Compression) bool {
+	return !arrow.IsFloating(f.Type.ID()) && !(table.IsTag(f.Name) && f.Type.ID() == arrow.STRING && codec != compress.Codecs.Uncompressed)
 }
 
 // schemaKey is the key under which Arrow's libraries keep the schema in the footer.
