@@ -7,6 +7,7 @@ import (
 	"math/rand/v2"
 	"os"
 	"path/filepath"
+	"strings"
 	"testing"
 
 	"labelweir/connectors/table"
@@ -96,6 +97,18 @@ func FuzzOpen(f *testing.F) {
 		}
 		f.Add(b, "label")
 		f.Add(b, "grade")
+	}
+	damaged, err := filepath.Glob("../testdata/damaged/*.arrow*")
+	if err != nil || len(damaged) == 0 {
+		f.Fatalf("no damaged seeds: %v", err)
+	}
+	for _, name := range damaged {
+		b, err := os.ReadFile(name)
+		if err != nil {
+			f.Fatal(err)
+		}
+		label, _, _ := strings.Cut(filepath.Base(name), "_")
+		f.Add(b, label)
 	}
 	f.Fuzz(func(t *testing.T, b []byte, label string) {
 		survive(t, filepath.Join(t.TempDir(), "in"), b, label)

@@ -154,7 +154,7 @@ func (m *messages) readFooter() error {
 
 // Message gives the next message or io.EOF. It is valid until the next call.
 func (m *messages) Message() (*ipc.Message, error) {
-	m.at = m.batch + 1
+	m.at, m.head = m.batch+1, nil
 	off := m.pos
 	if m.format == File {
 		if len(m.blocks) == 0 {

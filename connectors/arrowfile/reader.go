@@ -40,7 +40,7 @@ func newReader(f table.File, opt table.ReadOptions) (r *reader, err error) {
 }
 
 func (r *reader) damaged(what string, err error) error {
-	return table.At(r.Place(), table.ErrUnreadable, what, "the file is damaged or cut short: write it again", err)
+	return table.At(r.Place(), table.ErrUnreadable, what, "the file is damaged or cut short: write it again", table.Plain(err))
 }
 
 // Schema implements table.Reader.
@@ -49,7 +49,7 @@ func (r *reader) Schema() *arrow.Schema { return r.rd.Schema() }
 // Place implements table.Reader.
 func (r *reader) Place() table.Place {
 	p := table.Place{Path: r.path}
-	if r.msgs != nil {
+	if r.rd != nil { // before there is a schema, there is no record batch
 		p.Batch = r.msgs.at
 	}
 	return p

@@ -103,7 +103,7 @@ func areText(list []string) bool {
 }
 
 func (r *reader) damaged(what, column string, err error) error {
-	e := table.At(r.Place(), table.ErrUnreadable, what, "the file is damaged or cut short: write it again", err)
+	e := table.At(r.Place(), table.ErrUnreadable, what, "the file is damaged or cut short: write it again", table.Plain(err))
 	e.Column = column
 	return e
 }

@@ -3,6 +3,7 @@ package table
 import (
 	"errors"
 	"fmt"
+	"runtime"
 	"strings"
 )
 
@@ -53,12 +54,17 @@ func (e *Error) Error() string {
 	}
 	s += e.What
 	if e.Err != nil && e.Err.Error() != "" {
-		s += ": " + strings.TrimPrefix(e.Err.Error(), "arrow/ipc: ")
+		s += ": " + libraries().Replace(e.Err.Error())
 	}
 	if e.Do != "" {
 		s += "; " + e.Do
 	}
 	return s
+}
+
+// libraries takes out of a cause what only those who know the library can make sense of.
+func libraries() *strings.Replacer {
+	return strings.NewReplacer("arrow/ipc: ", "", "arrow/array: ", "", "unknown error while reading: ", "", "parquet: ", "", "*parquet.", "")
 }
 
 // Unwrap gives the sentinel and the cause.
@@ -77,7 +83,24 @@ func At(p Place, kind error, what, do string, err error) *Error {
 // Caught turns what recover gave into an error.
 func Caught(p any) error {
 	if err, ok := p.(error); ok {
-		return err
+		return Plain(err)
 	}
 	return fmt.Errorf("%v", p)
 }
+
+// Plain is err, or, when it or what a library made of it is a runtime error of Go, a sentence that tells a reader more.
+func Plain(err error) error {
+	if err == nil {
+		return nil
+	}
+	if fault := (runtime.Error)(nil); errors.As(err, &fault) || strings.Contains(err.Error(), "runtime error: ") {
+		return contradiction{err}
+	}
+	return err
+}
+
+// contradiction is what damaged bytes make Go's bounds checks say.
+type contradiction struct{ error }
+
+func (contradiction) Error() string   { return "lengths or places in it contradict each other" }
+func (c contradiction) Unwrap() error { return c.error }
