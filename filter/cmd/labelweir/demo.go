@@ -62,7 +62,7 @@ func runDemo(ctx context.Context, p *process, args []string) error {
 	}
 	var bar *term.Bar
 	if p.terminal {
-		bar = term.NewBar(p.err, time.Now)
+		bar = term.NewBar(p.screen, time.Now)
 	}
 	defer bar.Clear()
 	_, err = demo.Run(ctx, o, barred{p, bar}, sweep.Watch{Progress: bar.Show})

@@ -28,7 +28,7 @@ func (p *passed) Error() string { return fmt.Sprintf("the guarded process ended 
 // guarded runs the sweep in a child of this process. What ends the child becomes an error here, and what it left half
 // written is removed.
 func guarded(p *process, c *config.Config) error {
-	people, ok := p.err.(*os.File)
+	people, ok := p.screen.(*os.File)
 	if !ok {
 		people = os.Stderr
 	}
@@ -42,7 +42,7 @@ func guarded(p *process, c *config.Config) error {
 		return &passed{code}
 	}
 	if p.terminal {
-		fmt.Fprint(p.err, "\r\x1b[K") // a bar may stand there
+		fmt.Fprint(p.screen, "\r\x1b[K") // a bar may stand there
 	}
 	errs := []error{died(d, c)}
 	for _, name := range c.Output.Files() {

@@ -44,7 +44,7 @@ func start() int {
 		people, p.marks, p.args = child.Err, child.Marks, nil
 		go orphaned(child, stop) // ends with the process
 	}
-	p.err, p.terminal = people, term.Is(people)
+	p.err, p.screen, p.terminal = term.Clean(people), people, term.Is(people)
 	return run(ctx, p, os.Args[1:])
 }
 
@@ -61,6 +61,7 @@ type process struct {
 	in       io.Reader
 	out      *output   // data asked for; nothing else
 	err      io.Writer // everything a person reads
+	screen   io.Writer // err for what draws on a terminal
 	terminal bool      // err is a terminal
 	environ  func() []string
 	args     []string     // to start this program again with, its own name first; nil: what runs is the child already

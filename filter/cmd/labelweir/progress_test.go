@@ -21,7 +21,7 @@ func TestProgressIsForTerminalsOnly(t *testing.T) {
 	}
 	for _, terminal := range []bool{true, false} {
 		var out, err bytes.Buffer
-		p := &process{out: &output{w: &out}, err: &err, terminal: terminal, environ: func() []string { return nil }}
+		p := &process{out: &output{w: &out}, err: &err, screen: &err, terminal: terminal, environ: func() []string { return nil }}
 		args := []string{"sweep", line, "--label", "grade", "--replace", "--out", filepath.Join(dir, "out.arrow")}
 		if got := run(t.Context(), p, args); got != 0 {
 			t.Fatalf("ended with %d: %s", got, err.String())

@@ -64,7 +64,7 @@ func runSweep(ctx context.Context, p *process, args []string) error {
 	}
 	var bar *term.Bar
 	if p.terminal {
-		bar = term.NewBar(p.err, time.Now)
+		bar = term.NewBar(p.screen, time.Now)
 	}
 	report, err := sweep.Run(ctx, c, sweep.Watch{
 		Chosen:   func(choice []table.Choice) { tellChoice(p, choice) },
