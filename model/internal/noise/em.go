@@ -126,5 +126,8 @@ func (p *Params) prior(size []float64) float64 {
 	for _, b := range p.B {
 		v -= 0.5 * ridgeB * b * b
 	}
+	for _, s := range p.Slopes {
+		v -= 0.5 * ridgeMu * s.Mu * s.Mu
+	}
 	return v
 }
