@@ -41,7 +41,7 @@ func (l *lattice) build(s *Scratch, q, radius float64, bits int) {
 	l.y, l.omega = s.y, s.omega
 	l.x = resize(l.x, l.dense*l.n)
 	for i := range l.n {
-		for c, v := range s.x[i*s.dense : (i+1)*s.dense] {
+		for c, v := range s.number(i) {
 			l.x[c*l.n+i] = v * float32(s.y[i])
 		}
 	}

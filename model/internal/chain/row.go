@@ -4,18 +4,30 @@ package chain
 // that cannot leave an array of this length, so the loops below need no bounds check.
 const narrow = 1 << 16
 
+// number is the dense block of packed row i.
+func (s *Scratch) number(i int) []float32 {
+	r := int(s.row[i])
+	return s.x[r*s.dense : (r+1)*s.dense]
+}
+
+// columnsOf are the leaf columns of packed row i, where thin is not.
+func (s *Scratch) columnsOf(i int) []int32 {
+	r := int(s.row[i])
+	return s.leaves[r*s.trees : (r+1)*s.trees]
+}
+
 // dot is w·x of packed row i.
 func (s *Scratch) dot(i int) float64 {
-	sum := dotDense(s.x[i*s.dense:(i+1)*s.dense], s.w)
+	sum := dotDense(s.number(i), s.w)
 	if s.thin != nil {
 		return sum + s.value*sumThin(s.thin[i*s.trees:(i+1)*s.trees], (*[narrow]float64)(s.wide))
 	}
-	return sum + s.value*sumWide(s.leaves[i*s.trees:(i+1)*s.trees], s.w)
+	return sum + s.value*sumWide(s.columnsOf(i), s.w[s.dense:])
 }
 
 // add adds t·x of packed row i to w. The caller says moved when it is done with all rows.
 func (s *Scratch) add(i int, t float64) {
-	x := s.x[i*s.dense : (i+1)*s.dense]
+	x := s.number(i)
 	w := s.w[:len(x)]
 	for k, v := range x {
 		w[k] += t * float64(v)
@@ -28,8 +40,8 @@ func (s *Scratch) add(i int, t float64) {
 		}
 		return
 	}
-	w = s.w
-	for _, c := range s.leaves[i*s.trees : (i+1)*s.trees] {
+	w = s.w[s.dense:]
+	for _, c := range s.columnsOf(i) {
 		w[c] += t
 	}
 }
@@ -39,7 +51,7 @@ func (s *Scratch) leaf(i, t int) int {
 	if s.thin != nil {
 		return int(s.thin[i*s.trees+t])
 	}
-	return int(s.leaves[i*s.trees+t])
+	return s.dense + int(s.columnsOf(i)[t])
 }
 
 // dotDense is Σ x·w over the length of x, in four sums so that additions need not wait for each other.

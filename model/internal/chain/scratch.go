@@ -8,21 +8,28 @@ import (
 // Scratch is the working memory of runs. Its zero value is ready; reuse saves allocation. It belongs to one goroutine.
 //
 // A problem's rows are packed into it in a random order, so that an epoch walks memory forward and still meets the
-// rows in an order that has nothing to do with their labels.
+// rows in an order that has nothing to do with their labels. Runs of few epochs save the packing and read the rows where
+// they are.
 type Scratch struct {
 	n, dense, trees int
 	value           float64 // of a leaf indicator
 	lambda          float64
 
 	perm   []int32   // packed row → entry of the problem's Rows
-	x      []float32 // n×dense
-	leaves []int32   // n×trees, already offset by dense; empty where thin is not
-	thin   []uint16  // the same for few enough columns; nil otherwise
-	thins  []uint16  // memory of thin
-	y      []float64 // ±1
-	omega  []float64
-	ratio  []float64 // λ/ω
-	denom  []float64 // ‖x‖² + λ/ω
+	row    []int32   // packed row → row of x and leaves
+	x      []float32 // dense numbers a row
+	leaves []int32   // trees columns a row, the first leaf column being 0; not read where thin is
+	thin   []uint16  // the same for few enough columns, already offset by dense; nil otherwise
+
+	rows    []int32 // memory of row, x, leaves and thin
+	numbers []float32
+	columns []int32
+	thins   []uint16
+
+	y     []float64 // ±1
+	omega []float64
+	ratio []float64 // λ/ω
+	denom []float64 // ‖x‖² + λ/ω
 
 	wide   []float64 // narrow or more weights, of which w is the front
 	w      []float64 // dense, then leaves
@@ -58,35 +65,57 @@ func resize[T any](s []T, n int) []T {
 
 // load packs p with all rows kept, every α and weight zero; in the rows' own order without an rng.
 func (s *Scratch) load(p *Problem, rng *rand.Rand) {
-	p.check()
-	n := len(p.Rows)
-	s.n, s.dense, s.trees, s.value, s.lambda, s.epochs = n, p.Dense, p.Trees, p.LeafValue, p.Lambda, 0
-	s.perm = resize(s.perm, n)
-	s.x = resize(s.x, n*p.Dense)
-	s.wide = resize(s.wide, max(narrow, p.Columns()))
-	s.w = s.wide[:p.Columns()]
+	s.begin(p)
+	n := s.n
+	s.rows = resize(s.rows, n)
+	s.numbers = resize(s.numbers, n*p.Dense)
+	s.row, s.x = s.rows, s.numbers
 	if p.Columns() <= narrow {
 		s.thins = resize(s.thins, n*p.Trees)
-		s.thin, s.leaves = s.thins, s.leaves[:0]
+		s.thin, s.leaves = s.thins, nil
 	} else {
-		s.leaves, s.thin = resize(s.leaves, n*p.Trees), nil
-	}
-	s.y, s.omega = resize(s.y, n), resize(s.omega, n)
-	s.ratio, s.denom = resize(s.ratio, n), resize(s.denom, n)
-	s.alpha = resize(s.alpha, n)
-	s.keep, s.margin = resize(s.keep, n), resize(s.margin, n)
-	s.active = resize(s.active, n)[:0]
-	for i := range s.perm {
-		s.perm[i] = int32(i)
+		s.columns = resize(s.columns, n*p.Trees)
+		s.thin, s.leaves = nil, s.columns
 	}
 	if rng != nil {
 		rng.Shuffle(n, func(a, b int) { s.perm[a], s.perm[b] = s.perm[b], s.perm[a] })
 	}
 	for i, k := range s.perm {
-		s.pack(p, i, int(k))
+		s.row[i] = int32(i)
+		s.pack(p, i, int(p.Rows[k]))
+		s.weigh(p, i, int(k))
 	}
 	s.hold = s.holdFor()
 	s.reset()
+}
+
+// view is load without packing: rows stay where and as they are, and p is not to be changed as long as the run lasts.
+func (s *Scratch) view(p *Problem) {
+	s.begin(p)
+	s.row, s.x, s.leaves, s.thin = p.Rows, p.X, p.Leaves, nil
+	for i := range s.perm {
+		s.weigh(p, i, i)
+	}
+	s.hold = s.holdFor()
+	s.reset()
+}
+
+// begin makes room for p's rows, in their own order.
+func (s *Scratch) begin(p *Problem) {
+	p.check()
+	n := len(p.Rows)
+	s.n, s.dense, s.trees, s.value, s.lambda, s.epochs = n, p.Dense, p.Trees, p.LeafValue, p.Lambda, 0
+	s.perm = resize(s.perm, n)
+	for i := range s.perm {
+		s.perm[i] = int32(i)
+	}
+	s.wide = resize(s.wide, max(narrow, p.Columns()))
+	s.w = s.wide[:p.Columns()]
+	s.y, s.omega = resize(s.y, n), resize(s.omega, n)
+	s.ratio, s.denom = resize(s.ratio, n), resize(s.denom, n)
+	s.alpha = resize(s.alpha, n)
+	s.keep, s.margin = resize(s.keep, n), resize(s.margin, n)
+	s.active = resize(s.active, n)[:0]
 }
 
 // holdFor is the number of epochs that w needs to follow a change of the flags. An epoch of dual ascent shrinks the
@@ -104,24 +133,23 @@ func (s *Scratch) holdFor() int {
 // tiny stands in for a weight of zero, whose row then has no say but does no harm.
 const tiny = 1e-300
 
-// pack copies entry k of the problem to packed row i.
-func (s *Scratch) pack(p *Problem, i, k int) {
-	r := int(p.Rows[k])
-	x := s.x[i*s.dense : (i+1)*s.dense]
-	copy(x, p.X[r*p.Dense:(r+1)*p.Dense])
-	norm := float64(p.Trees)*p.LeafValue*p.LeafValue + squares32(x)
-	from, shift := p.Leaves[r*p.Trees:(r+1)*p.Trees], int32(s.dense)
-	if s.thin != nil {
-		to := s.thin[i*s.trees:][:len(from)]
-		for t, c := range from {
-			to[t] = uint16(c + shift)
-		}
-	} else {
-		to := s.leaves[i*s.trees:][:len(from)]
-		for t, c := range from {
-			to[t] = c + shift
-		}
+// pack copies row r of the design to packed row i.
+func (s *Scratch) pack(p *Problem, i, r int) {
+	copy(s.x[i*s.dense:(i+1)*s.dense], p.X[r*p.Dense:(r+1)*p.Dense])
+	from := p.Leaves[r*p.Trees : (r+1)*p.Trees]
+	if s.thin == nil {
+		copy(s.leaves[i*s.trees:], from)
+		return
 	}
+	to, shift := s.thin[i*s.trees:][:len(from)], int32(s.dense)
+	for t, c := range from {
+		to[t] = uint16(c + shift)
+	}
+}
+
+// weigh sets what the steps along packed row i, which is entry k of the problem, depend on.
+func (s *Scratch) weigh(p *Problem, i, k int) {
+	norm := float64(p.Trees)*p.LeafValue*p.LeafValue + squares32(s.number(i))
 	s.y[i], s.omega[i] = float64(p.Y[k]), p.Omega[k]
 	s.ratio[i] = p.Lambda / max(p.Omega[k], tiny)
 	s.denom[i] = norm + s.ratio[i]

@@ -48,8 +48,8 @@ func Carry(from *State, index []int32, changed []bool) *Start {
 // start; its Status is NoProgress if that is the start itself.
 func Warm(p *Problem, q float64, from *Start, epochs int, rng *rand.Rand, s *Scratch) State {
 	const tolerance = 1e-2
-	s.load(p, rng)
-	start := s.begin(q, from)
+	s.view(p)
+	start := s.take(q, from)
 	s.remember(start)
 	_, used := s.ascend(heldEpochs, held, rng)
 	s.consider(s.measure(q))
@@ -60,8 +60,8 @@ func Warm(p *Problem, q float64, from *Start, epochs int, rng *rand.Rand, s *Scr
 	return s.end(q, status)
 }
 
-// begin takes α and flags from a start, decides the flags of new rows and returns J.
-func (s *Scratch) begin(q float64, from *Start) float64 {
+// take takes α and flags from a start, decides the flags of new rows and returns J.
+func (s *Scratch) take(q float64, from *Start) float64 {
 	s.restore(from)
 	j := s.measure(q)
 	for i, k := range s.perm {

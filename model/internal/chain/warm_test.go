@@ -96,8 +96,8 @@ func TestNewRowsTakeTheFlagOfTheirMargin(t *testing.T) {
 	next, index := slide(all, 100, 1100, 0, 1000)
 	from := Carry(&cold, index, nil)
 	w, kept, dropped := weights(next, from.Alpha), 0, 0
-	s.load(next, newRand(2))
-	s.begin(-.5, from)
+	s.view(next)
+	s.take(-.5, from)
 	for i, k := range s.perm {
 		want := from.Keep[k]
 		if index[k] < 0 {

@@ -4,13 +4,16 @@ package forest
 const bag float64 = 0.632
 
 // InBag tells whether a row with this key is in the bag of t, if it was there to be drawn when t was grown.
-func (t *Tree) InBag(key uint64) bool {
+func (t *Tree) InBag(key uint64) bool { return t.outOfBag(key) == 0 }
+
+// outOfBag is 1 for a row with this key that is not in the bag of t, else 0.
+func (t *Tree) outOfBag(key uint64) uint64 {
 	x := key ^ t.Seed
 	x = (x ^ x>>32) * 0xd6e8feb86659fd93
 	x = (x ^ x>>32) * 0xd6e8feb86659fd93
 	x ^= x >> 32
 	const parts = 1 << 53
-	return x>>11 < uint64(bag*parts)
+	return 1 - (x>>11-uint64(bag*parts))>>63
 }
 
 // blockRows is how many rows vote in one tree before the next tree comes: their leaf ids stay in the cache meanwhile.
@@ -46,14 +49,12 @@ func (f *Forest) VoteOutOfBag(leaves []int32, at []int32, keys []uint64, dst []f
 func (f *Forest) voteTree(t int, leaves, at []int32, keys []uint64, dst []float64, votes []int32) {
 	tree, k, trees, first := f.Trees[t], f.Classes, len(f.Trees), f.First[t]
 	for i, r := range at {
-		if tree.InBag(keys[i]) {
-			continue
-		}
-		votes[i]++
+		out := tree.outOfBag(keys[i]) // a factor, because a branch would often be foretold wrong
+		votes[i] += int32(out)
 		l := int(leaves[int(r)*trees+t] - first)
 		to := dst[i*k : (i+1)*k]
 		for c, s := range tree.Shares[l*k : (l+1)*k] {
-			to[c] += float64(s)
+			to[c] += float64(s) * float64(out)
 		}
 	}
 }
