@@ -26,10 +26,8 @@ type converted struct {
 func newConversion(src *Source, to *Format) (*conversion, error) {
 	schema := src.in.schema
 	raw := RawIndex(schema)
-	if raw >= 0 {
-		if kept, _ := schema.Field(raw).Metadata.GetValue(RawKey); kept == to.Name {
-			return nil, nil
-		}
+	if raw >= 0 && rawFormat(schema) == to.Name {
+		return nil, nil
 	}
 	settled, err := src.settle()
 	if err != nil || raw < 0 && len(settled) == 0 {

@@ -174,13 +174,13 @@ func (in *input) follow() error {
 
 // alike tells whether the open file has the columns of the first.
 func (in *input) alike() error {
-	first, now := in.schema, in.rd.Schema()
+	first, now := visible(in.schema), visible(in.rd.Schema())
 	name := in.files[0].title()
-	for i, f := range now.Fields() {
-		if i >= first.NumFields() {
+	for i, f := range now {
+		if i >= len(first) {
 			return in.unlike(f.Name, "is not in "+name)
 		}
-		switch g := first.Field(i); {
+		switch g := first[i]; {
 		case f.Name != g.Name:
 			return in.unlike(f.Name, fmt.Sprintf("stands where %s has %q", name, g.Name))
 		case !arrow.TypeEqual(f.Type, g.Type):
@@ -189,8 +189,11 @@ func (in *input) alike() error {
 			return in.unlike(f.Name, "may have nulls here, but not in "+name)
 		}
 	}
-	if n := now.NumFields(); n < first.NumFields() {
-		return in.unlike(first.Field(n).Name, "is in "+name+", but not here")
+	if n := len(now); n < len(first) {
+		return in.unlike(first[n].Name, "is in "+name+", but not here")
+	}
+	if rawFormat(in.schema) != rawFormat(in.rd.Schema()) {
+		return &Error{Path: in.title(), What: "has another format than " + name, Do: "sweep files of different formats one by one", Kind: ErrColumn}
 	}
 	return nil
 }

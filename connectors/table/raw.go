@@ -1,6 +1,10 @@
 package table
 
-import "github.com/apache/arrow/go/v16/arrow"
+import (
+	"slices"
+
+	"github.com/apache/arrow/go/v16/arrow"
+)
 
 // RawKey is the metadata key of the field of a hidden column that holds each row's bytes as they stand in the file,
 // without the line's end. Its value is the Name of the format.
@@ -22,10 +26,21 @@ func RawIndex(schema *arrow.Schema) int {
 	return -1
 }
 
-// shown is how many columns of a schema are not hidden.
-func shown(schema *arrow.Schema) int {
-	if RawIndex(schema) >= 0 {
-		return schema.NumFields() - 1
+// visible are the fields of a schema but the hidden one.
+func visible(schema *arrow.Schema) []arrow.Field {
+	fields := schema.Fields()
+	if i := RawIndex(schema); i >= 0 {
+		fields = slices.Delete(slices.Clone(fields), i, i+1)
 	}
-	return schema.NumFields()
+	return fields
+}
+
+// rawFormat is the format whose bytes the hidden column holds, "" when there is none.
+func rawFormat(schema *arrow.Schema) string {
+	i := RawIndex(schema)
+	if i < 0 {
+		return ""
+	}
+	name, _ := schema.Field(i).Metadata.GetValue(RawKey)
+	return name
 }

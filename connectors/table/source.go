@@ -63,7 +63,7 @@ func Open(files []Input, rec filter.Record, opt Options) (src *Source, err error
 		return nil, err
 	}
 	if len(pl.features) == 0 {
-		return nil, &Error{Path: p.path, What: fmt.Sprintf("none of its %d columns can be a field", shown(p.schema)),
+		return nil, &Error{Path: p.path, What: fmt.Sprintf("none of its %d columns can be a field", len(visible(p.schema))),
 			Do: "name the fields, or add columns of numbers, text or vectors", Kind: ErrColumn}
 	}
 	src = &Source{in: in, opt: opt, rec: rec, plan: pl, names: names, choice: choice,
