@@ -17,6 +17,7 @@ type command struct {
 	brief string             // one line
 	about string             // what help adds below the usage
 	flags func() []argv.Flag // for help only; nil: none
+	words func() []string    // what operands can be, for completion; nil: files
 	run   func(ctx context.Context, p *process, args []string) error
 }
 
@@ -27,6 +28,7 @@ func commands() []command {
 		sweepCommand(),
 		inspectCommand(),
 		versionCommand(),
+		completionCommand(),
 		helpCommand(),
 	}
 }
@@ -95,7 +97,7 @@ func noOperands(name string, operands []string) error {
 
 func helpCommand() command {
 	return command{
-		name: "help", usage: "[COMMAND]", brief: "shows how a command is used",
+		name: "help", usage: "[COMMAND]", brief: "shows how a command is used", words: commandNames,
 		run: func(_ context.Context, p *process, args []string) error {
 			if len(args) == 0 {
 				overview(p.out)
@@ -111,10 +113,21 @@ func helpCommand() command {
 	}
 }
 
+func commandNames() []string {
+	var names []string
+	for _, c := range commands() {
+		names = append(names, c.name)
+	}
+	return names
+}
+
+// noWords is for commands without operands.
+func noWords() []string { return []string{} }
+
 func overview(w io.Writer) {
 	fmt.Fprint(w, "labelweir finds wrong labels in labelled records.\n\nusage: labelweir COMMAND\n\n")
 	for _, c := range commands() {
-		fmt.Fprintf(w, "  %-8s %s\n", c.name, c.brief)
+		fmt.Fprintf(w, "  %-10s %s\n", c.name, c.brief)
 	}
 	fmt.Fprint(w, "\nlabelweir help COMMAND shows its flags.\n")
 }

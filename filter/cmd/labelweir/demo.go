@@ -19,6 +19,7 @@ func demoCommand() command {
 Sensor readings, several graders, and one of them who begins to confuse two grades halfway: all drawn from a seed, so that
 it is known which grades are wrong. The line goes through the same sweep as any file of yours; afterwards what was found
 is set against what was planted.`,
+		words: noWords,
 		flags: func() []argv.Flag { return demoFlags(new(demo.Options)) },
 		run:   runDemo,
 	}

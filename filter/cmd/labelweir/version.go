@@ -8,7 +8,7 @@ import (
 
 func versionCommand() command {
 	return command{
-		name: "version", brief: "tells which build this is",
+		name: "version", brief: "tells which build this is", words: noWords,
 		run: func(_ context.Context, p *process, args []string) error {
 			if err := noOperands("version", args); err != nil {
 				return err

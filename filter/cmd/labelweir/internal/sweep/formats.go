@@ -12,3 +12,12 @@ import (
 func formats() []table.Format {
 	return append(arrowfile.Formats(), parquet.Format(), csv.Format(), jsonlines.Format())
 }
+
+// FormatNames lists them by the names under which they are asked for.
+func FormatNames() []string {
+	var names []string
+	for _, f := range formats() {
+		names = append(names, f.Name)
+	}
+	return names
+}
