@@ -163,7 +163,9 @@ func (w *writer) needsQuotes(cell []byte) bool {
 
 func (w *writer) flush() error {
 	_, err := w.w.Write(w.buf)
-	w.buf = w.buf[:0]
+	if w.buf = w.buf[:0]; cap(w.buf) > 16*flushBytes { // after a very long row
+		w.buf = nil
+	}
 	return err
 }
 

@@ -122,7 +122,9 @@ func (w *writer) row(raws *array.Binary, i int) {
 
 func (w *writer) flush() error {
 	_, err := w.w.Write(w.buf)
-	w.buf = w.buf[:0]
+	if w.buf = w.buf[:0]; cap(w.buf) > 16*flushBytes { // after a very long row
+		w.buf = nil
+	}
 	return err
 }
 

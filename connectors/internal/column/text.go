@@ -10,6 +10,9 @@ import (
 	"github.com/apache/arrow/go/v16/arrow/memory"
 )
 
+// mostKept is the most bytes of a buffer that are kept for the next array.
+const mostKept = 32 << 20
+
 // Text collects text or bytes. All values between two calls of Take must be shorter than 2 GiB together.
 type Text struct {
 	offsets []int32 // where each value begins in data
@@ -63,6 +66,9 @@ func (t *Text) Take(dt arrow.DataType, mem memory.Allocator) arrow.Array {
 	nulls := t.valid.nulls
 	arr := made(dt, n, nulls, nil, t.valid.buffer(mem), buffer(arrow.Int32Traits.CastToBytes(t.offsets), mem), buffer(t.data, mem))
 	t.offsets, t.data = t.offsets[:0], t.data[:0]
+	if cap(t.data) > mostKept {
+		t.data = nil
+	}
 	t.valid.clear()
 	return arr
 }
@@ -107,6 +113,9 @@ func (v *Vectors) Take(dt *arrow.FixedSizeListType, mem memory.Allocator) arrow.
 	defer items.Release()
 	arr := made(dt, v.valid.n, v.valid.nulls, []arrow.ArrayData{items}, v.valid.buffer(mem))
 	v.values = v.values[:0]
+	if 8*cap(v.values) > mostKept {
+		v.values = nil
+	}
 	v.valid.clear()
 	return arr
 }

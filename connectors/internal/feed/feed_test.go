@@ -81,3 +81,21 @@ func TestRestartGoesBack(t *testing.T) {
 		f.Restart(0)
 	}
 }
+
+func TestALongRowsRoomIsGivenBack(t *testing.T) {
+	const size = 40 * first
+	f := New(bytes.NewReader(bytesOf(size)), size, size)
+	for len(f.Window()) < 30*first {
+		if err := f.More(); err != nil {
+			t.Fatal(err)
+		}
+	}
+	f.Skip(len(f.Window()) - 10)
+	at := f.Offset()
+	if err := f.More(); err != nil {
+		t.Fatal(err)
+	}
+	if len(f.buf) != first || f.Offset() != at || !bytes.Equal(f.Window(), bytesOf(size)[at:][:len(f.Window())]) {
+		t.Errorf("a buffer of %d bytes at %d, want %d at %d", len(f.buf), f.Offset(), first, at)
+	}
+}
