@@ -16,9 +16,16 @@ type command struct {
 	usage string             // arguments, as help shows them
 	brief string             // one line
 	about string             // what help adds below the usage
+	shown []example          // what help shows it with
 	flags func() []argv.Flag // for help only; nil: none
 	words func() []string    // what operands can be, for completion; nil: files
 	run   func(ctx context.Context, p *process, args []string) error
+}
+
+// example is a command line that does something worth showing.
+type example struct {
+	does string // begins in small letters
+	line string
 }
 
 // commands lists them in the order in which help shows them.
@@ -137,6 +144,9 @@ func (c *command) help(w io.Writer) {
 	fmt.Fprintf(w, "labelweir %s: %s\n\nusage: labelweir %s\n", c.name, c.brief, strings.TrimSpace(c.name+" "+c.usage))
 	if c.about != "" {
 		fmt.Fprintf(w, "\n%s\n", strings.TrimSpace(c.about))
+	}
+	for _, e := range c.shown {
+		fmt.Fprintf(w, "\n  %s:\n    %s\n", e.does, e.line)
 	}
 	if c.flags == nil {
 		return

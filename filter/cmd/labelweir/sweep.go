@@ -26,8 +26,30 @@ Every row comes back unchanged and in order, with weir_score (the probability th
 weir_implied, weir_margin, weir_reason and weir_snapshot appended. With --mode divert the near-certain wrong ones go to
 the --quarantine file instead. A summary goes to standard error. Settings may also come from a file (-c) and from the
 environment; the README has the table.`,
+		shown: sweepExamples(),
 		flags: func() []argv.Flag { return sweepFlags(config.NewLoader(), new(string)) },
 		run:   runSweep,
+	}
+}
+
+func sweepExamples() []example {
+	return []example{
+		{"tag every row of a table, and write down what was found",
+			"labelweir sweep grading.arrow --label grade --source grader --out tagged.arrow --report report.json"},
+		{"hold back the rows whose labels are near-certainly wrong",
+			"labelweir sweep grading.parquet --label grade --mode divert --out passed.parquet --quarantine held.parquet"},
+		{"follow graders' habits along the file with a window that slides",
+			"labelweir sweep grading.csv --label grade --window 300 --retrain 50% --hold 50 --out sliding.csv"},
+		{"go on where a row can't be read, and keep such rows",
+			"labelweir sweep grading.csv --label grade --out tagged.csv --unreadable unreadable.jsonl"},
+		{"read a folder of files as one table, and write another format",
+			"labelweir sweep crates --label grade --out crates.parquet"},
+		{"stand in a pipe",
+			"cat grading.jsonl | labelweir sweep - --format jsonlines --label grade --out - > tagged.jsonl"},
+		{"fail a pipeline when more than a fifth of the labels seem wrong, with settings from a file",
+			"labelweir sweep grading.arrow -c weir.yaml --gate 20% --snapshot last.weir"},
+		{"read a file of your own making in the process itself, with no limit of memory",
+			"labelweir sweep grading.arrow --label grade --trust --out trusted.arrow"},
 	}
 }
 
