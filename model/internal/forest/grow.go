@@ -29,6 +29,8 @@ func Grow(b *Bins, rows Rows, classes, n int, o Options, rng *rand.Rand) []*Tree
 		total:  make([]float64, classes),
 		weight: make([]float64, classes),
 		counts: make([]int32, classes),
+		node:   make([]int32, classes),
+		below:  make([]int32, classes),
 		in:     make([]drawn, 0, len(rows.At)),
 		spare:  make([]drawn, len(rows.At)),
 	}
@@ -53,6 +55,8 @@ type grower struct {
 	counts              []int32
 	in, spare           []drawn // the tree's in-bag rows
 	stack               []span
+	tally               []int32 // rows of each class of each span of the stack
+	node, below         []int32 // of the node at hand, and at or below the best cut
 	t                   *Tree
 }
 
@@ -73,10 +77,14 @@ func (g *grower) tree() *Tree {
 			g.in = append(g.in, drawn{g.rows.At[i], g.labels[i]})
 		}
 	}
+	clear(g.node)
+	for _, r := range g.in {
+		g.node[r.label]++
+	}
 	g.stack = append(g.stack[:0], span{hi: int32(len(g.in))})
+	g.tally = append(g.tally[:0], g.node...)
 	for len(g.stack) > 0 {
-		s := g.stack[len(g.stack)-1]
-		g.stack = g.stack[:len(g.stack)-1]
+		s := g.pop()
 		feature, cut, ok := g.split(s)
 		if !ok {
 			g.leaf(s)
@@ -89,49 +97,28 @@ func (g *grower) tree() *Tree {
 		g.stack = append(g.stack,
 			span{lo: mid, hi: s.hi, node: child + 1, depth: s.depth + 1},
 			span{lo: s.lo, hi: mid, node: child, depth: s.depth + 1})
+		for c, n := range g.node {
+			g.tally = append(g.tally, n-g.below[c])
+		}
+		g.tally = append(g.tally, g.below...)
 	}
 	return g.t
 }
 
-// relabel draws this tree's labels.
-func (g *grower) relabel() {
-	if g.rows.Chance == nil {
-		return
-	}
-	for i := range g.labels {
-		u := g.rng.Float64()
-		p := g.rows.Chance[i*g.k : (i+1)*g.k]
-		c := 0
-		for c < g.k-1 && u >= p[c] {
-			u -= p[c]
-			c++
-		}
-		g.labels[i] = int32(c)
-	}
-}
-
-// balance gives every class the same total weight.
-func (g *grower) balance() {
-	clear(g.weight)
-	for _, l := range g.labels {
-		g.weight[l]++
-	}
-	for c, n := range g.weight {
-		if n > 0 {
-			g.weight[c] = float64(len(g.labels)) / n
-		}
-	}
+// pop takes a span off the stack and makes it the node at hand.
+func (g *grower) pop() span {
+	top := len(g.stack) - 1
+	s := g.stack[top]
+	copy(g.node, g.tally[top*g.k:])
+	g.stack, g.tally = g.stack[:top], g.tally[:top*g.k]
+	return s
 }
 
 func (g *grower) leaf(s span) {
 	id := len(g.t.Shares) / g.k
 	g.t.Nodes[s.node] = Node{Child: ^int32(id)}
-	clear(g.counts)
-	for _, r := range g.in[s.lo:s.hi] {
-		g.counts[r.label]++
-	}
 	n := float32(s.hi - s.lo)
-	for _, c := range g.counts {
+	for _, c := range g.node {
 		share := 1 / float32(g.k)
 		if n > 0 {
 			share = float32(c) / n
@@ -143,7 +130,7 @@ func (g *grower) leaf(s span) {
 // split looks for the best of some random cuts of s; features that do not vary in it are drawn again, within limits.
 func (g *grower) split(s span) (feature int, cut uint8, ok bool) {
 	in := g.in[s.lo:s.hi]
-	if len(in) < 2*g.o.MinLeaf || len(in) < 2 || int(s.depth) >= g.o.MaxDepth || !g.countTotal(in) {
+	if len(in) < 2*g.o.MinLeaf || len(in) < 2 || int(s.depth) >= g.o.MaxDepth || !g.mixed() {
 		return 0, 0, false
 	}
 	best, valid := 0.0, 0
@@ -160,6 +147,7 @@ func (g *grower) split(s span) (feature int, cut uint8, ok bool) {
 			varies = true
 			if v := g.gain(); v > best {
 				best, feature, cut, ok = v, d, at, true
+				copy(g.below, g.counts)
 			}
 		}
 		if varies {
@@ -169,14 +157,10 @@ func (g *grower) split(s span) (feature int, cut uint8, ok bool) {
 	return feature, cut, ok
 }
 
-// countTotal counts classes in a node and tells whether there are at least two.
-func (g *grower) countTotal(in []drawn) bool {
-	clear(g.counts)
-	for _, r := range in {
-		g.counts[r.label]++
-	}
+// mixed fills total and tells whether the node has rows of at least two classes.
+func (g *grower) mixed() bool {
 	kinds := 0
-	for c, n := range g.counts {
+	for c, n := range g.node {
 		g.total[c] = float64(n) * g.weight[c]
 		if n > 0 {
 			kinds++
