@@ -276,12 +276,18 @@ func (f *fitting) whole(ctx context.Context) error {
 	})
 }
 
+// swiftRows is from how many rows on two epochs bring the weights close enough to their optimum for the flags to be renewed.
+const swiftRows = 8000
+
 // warm refits the plan of the last training.
 func (f *fitting) warm(ctx context.Context, stage uint64, last *noise.Layer) (*noise.Layer, *noise.Facts, error) {
 	if err := f.grow(ctx, stage<<2); err != nil {
 		return nil, nil, err
 	}
-	o := chain.PortfolioOptions{WarmEpochs: 3, Hysteresis: 1e-3}
+	o := chain.PortfolioOptions{WarmEpochs: 5, Hysteresis: 1e-3}
+	if f.data.Rows() >= swiftRows {
+		o.WarmEpochs = 3
+	}
 	err := f.each(ctx, "chains", stage<<2|1, f.folds, func(fold *learn.Fold, rng *rand.Rand, s *chain.Scratch) {
 		for _, m := range f.plan {
 			if m.forest < 0 {

@@ -7,14 +7,6 @@ import (
 	"labelweir/model/internal/loss"
 )
 
-// heldEpochs is the longest and held the largest projected gradient, in units of the margin, until which a warm run holds
-// the flags it came with. Rows that left took their α out of w, so margins are off at first; flags renewed on them fall
-// towards the solution that drops everything.
-const (
-	heldEpochs = 4
-	held       = 0.2
-)
-
 // Start is where a warm run begins, by the rows of its problem: α, flags, and which rows take the flag that their margin
 // asks for at first; New may be nil. A dropped row's α does not count.
 type Start struct {
@@ -43,15 +35,16 @@ func Carry(from *State, index []int32, changed []bool) *Start {
 	return st
 }
 
-// Warm continues from a start: it rebuilds the weights, holds the flags while these follow, up to four epochs, then renews
-// them as the graduated run does, for so many epochs in all, at least one of them after the flags were held. The result is the point of the lowest J met, so never above the J of the
-// start; its Status is NoProgress if that is the start itself.
+// Warm continues from a start: it rebuilds the weights and makes so many epochs, at least two; after all but one of them, or four,
+// it renews the flags as the graduated run does. Rows that left took their α out of w, so margins are off at first; flags renewed on
+// them would fall towards the solution that drops everything. Five epochs do for few rows, three for many. The result is
+// the point of the lowest J met, so never above the J of the start; its Status is NoProgress if that is the start itself.
 func Warm(p *Problem, q float64, from *Start, epochs int, rng *rand.Rand, s *Scratch) State {
-	const tolerance = 1e-2
+	const tolerance, held = 1e-2, 4
 	s.view(p)
 	start := s.take(q, from)
 	s.remember(start)
-	_, used := s.ascend(heldEpochs, held, rng)
+	_, used := s.ascend(max(1, min(held, epochs-1)), tolerance, rng)
 	s.consider(s.measure(q))
 	status := s.cycle(Stage{Q: q, Tolerance: tolerance}, max(1, epochs-used), rng)
 	if s.best.j >= start {

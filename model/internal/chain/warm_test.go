@@ -52,6 +52,21 @@ func TestWarmFromAnOptimumStaysThere(t *testing.T) {
 	}
 }
 
+func TestThreeEpochsDoForManyRows(t *testing.T) {
+	all, _ := linear(8400, 10, 12, 16, .25, newRand(11))
+	s := &Scratch{}
+	p, _ := slide(all, 0, 8000, 0, 0)
+	next, index := slide(all, 400, 8400, 0, 8000)
+	for _, q := range []float64{-1, -.5, 0} {
+		cold := Graduated(p, nil, []float64{q}, newRand(1), s)[0]
+		three := Warm(next, q, Carry(&cold, index, nil), 3, newRand(2), s)
+		many := Warm(next, q, Carry(&cold, index, nil), 40, newRand(2), s)
+		if three.J > many.J*1.001 || three.Epochs != 3 {
+			t.Errorf("q=%v: J %v after %d epochs, %v after %d", q, three.J, three.Epochs, many.J, many.Epochs)
+		}
+	}
+}
+
 func TestCarryTreatsARelabelledRowAsNew(t *testing.T) {
 	p, _ := linear(300, 5, 0, 0, .1, newRand(4))
 	s := &Scratch{}
