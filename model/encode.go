@@ -34,7 +34,7 @@ func (in *intake) carry(t *Table, last *intake) {
 	}
 	d, was := in.data, last.data
 	d.Old = make([]int32, len(in.rows))
-	in.encoder, d.Kernels, d.Pairs = last.encoder, was.Kernels, was.Pairs
+	in.encoder, d.Kernels, d.Pairs, d.Leafless = last.encoder, was.Kernels, was.Pairs, was.Leafless
 	in.allocate()
 	var news []int32
 	for i, k := range d.Keys {

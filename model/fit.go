@@ -98,36 +98,42 @@ func (f *fitting) grow(ctx context.Context, stage uint64) error {
 	})
 }
 
-// solve fits the settings of one design and λ in the listed folds and scores the rows they hold out.
+// solve fits the settings of one design and λ in a fold: scorers for fresh rows in the fold that holds nothing out, in
+// the others scores of the rows they hold out.
 func (f *fitting) solve(fold *learn.Fold, design int, lambda float64, qs []float64, o chain.PortfolioOptions, rng *rand.Rand, s *chain.Scratch) {
-	linear, tally := fold.Solve(f.data, design, lambda, qs, o, rng, s)
+	linear := make([]learn.Linear, len(qs))
+	for j, q := range qs {
+		linear[j].Setting = learn.Setting{Design: design, Lambda: lambda, Q: q}
+	}
+	take := func(j int, p learn.Pair) { linear[j].Pairs = append(linear[j].Pairs, p) }
+	var h *heldOut
+	if fold.Number != wholeFold {
+		h = f.holdOut(fold, linear)
+		take = h.add
+	}
+	tally := fold.Solve(f.data, design, lambda, qs, o, rng, s, take)
+	if h != nil {
+		h.finish()
+	}
 	f.mu.Lock()
+	defer f.mu.Unlock()
 	f.tallies[fold.Number] = learn.AddTally(f.tallies[fold.Number], tally)
-	for i := range linear {
-		set := linear[i].Setting
-		if fold.Number == wholeFold {
-			f.linear[set] = linear[i]
-		} else if f.scores[set] == nil {
-			f.scores[set] = make([]float64, f.data.Rows()*f.data.Classes)
+	for _, l := range linear {
+		if len(l.Pairs) > 0 {
+			f.linear[l.Setting] = l
 		}
 	}
-	f.mu.Unlock()
-	if fold.Number == wholeFold {
-		return
-	}
-	k := f.data.Classes
-	var in learn.Input
-	for i := range linear {
-		f.mu.Lock()
-		dst := f.scores[linear[i].Setting]
-		f.mu.Unlock()
-		for r, at := range f.fold {
-			if int(at) == fold.Number {
-				fold.Input(f.data, r, &in)
-				linear[i].Score(&in, dst[r*k:(r+1)*k])
-			}
+}
+
+// linears are the settings of the plan's linear scorers.
+func (f *fitting) linears() []learn.Setting {
+	var out []learn.Setting
+	for _, m := range f.plan {
+		if m.forest < 0 {
+			out = append(out, m.setting)
 		}
 	}
+	return out
 }
 
 // members are the out-of-fold class scores of the plan.
@@ -149,6 +155,7 @@ func (f *fitting) cold(ctx context.Context) (*noise.Layer, *noise.Facts, error) 
 		return nil, nil, err
 	}
 	learn.ChoosePairs(f.data, f.votes[learn.Raw])
+	learn.ChooseLeaves(f.data, f.leaves())
 	held := f.folds[:len(f.folds)-1]
 	trial := held[:f.trials(len(held))]
 	none := chain.PortfolioOptions{}
@@ -169,6 +176,7 @@ func (f *fitting) cold(ctx context.Context) (*noise.Layer, *noise.Facts, error) 
 		}
 	}
 	first := f.choose(f.scores, rows)
+	f.keep(settings(first, learn.Qs[:]))
 	err = f.each(ctx, "chains", 2, held[len(trial):], func(fold *learn.Fold, rng *rand.Rand, s *chain.Scratch) {
 		for _, set := range first {
 			f.solve(fold, set.Design, set.Lambda, learn.Qs[:], none, rng, s)
@@ -177,15 +185,8 @@ func (f *fitting) cold(ctx context.Context) (*noise.Layer, *noise.Facts, error) 
 	if err != nil {
 		return nil, nil, err
 	}
-	full := map[learn.Setting][]float64{}
-	for _, set := range first {
-		for _, q := range learn.Qs {
-			set.Q = q
-			full[set] = f.scores[set]
-		}
-	}
 	f.plan = []member{{forest: learn.Raw}, {forest: learn.Cleaned}}
-	for _, set := range f.choose(full, nil) {
+	for _, set := range f.choose(f.scores, nil) {
 		f.plan = append(f.plan, member{forest: -1, setting: set})
 	}
 	f.progress("noise", 0, 1)
@@ -194,25 +195,42 @@ func (f *fitting) cold(ctx context.Context) (*noise.Layer, *noise.Facts, error) 
 	if f.leaveOut(layer, data) {
 		layer, facts = noise.Refit(f.subset(nil, f.members()...), layer)
 	}
-	f.forget()
+	f.keep(f.linears())
 	f.progress("noise", 1, 1)
 	return layer, facts, f.whole(ctx)
 }
 
-// forget frees what the search tried and the plan has no use for.
-func (f *fitting) forget() {
-	var used []learn.Setting
+// keep frees what the search left of settings other than the listed ones.
+func (f *fitting) keep(used []learn.Setting) {
 	scores := map[learn.Setting][]float64{}
-	for _, m := range f.plan {
-		if m.forest < 0 {
-			used = append(used, m.setting)
-			scores[m.setting] = f.scores[m.setting]
-		}
+	for _, set := range used {
+		scores[set] = f.scores[set]
 	}
 	f.scores = scores
 	for _, fold := range f.folds {
 		fold.Forget(used)
 	}
+}
+
+// settings are those listed, each at every q.
+func settings(list []learn.Setting, qs []float64) []learn.Setting {
+	var out []learn.Setting
+	for _, set := range list {
+		for _, q := range qs {
+			set.Q = q
+			out = append(out, set)
+		}
+	}
+	return out
+}
+
+// leaves is the most leaves that a fold's forest for linear scorers has.
+func (f *fitting) leaves() int {
+	most := 0
+	for _, fold := range f.folds {
+		most = max(most, fold.Forest[learn.Cleaned].Leaves())
+	}
+	return most
 }
 
 // trials is the number of folds, of so many, on which λ is searched: enough for trialRows held-out rows, at most two in

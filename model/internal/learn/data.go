@@ -24,6 +24,9 @@ type Data struct {
 	// Pairs are the pairs of classes, first below second, that linear scorers tell apart; see ChoosePairs.
 	Pairs [][2]int
 
+	// Leafless is set where the leaves' weights for all pairs would take too much memory: no design then has leaves.
+	Leafless bool
+
 	// Old is, for each row, its index in the data of the fit before, or −1; nil on a cold fit.
 	Old []int32
 }

@@ -29,11 +29,14 @@ func heldOut(all []*Data, folds int) [][]float64 {
 			out = append(out, f.scores(d, fold, func(i int, dst []float64) { f.Vote(which, i, dst) }))
 		}
 		for design := range Designs {
-			linear, _ := f.Solve(d, design, Designs[design].Lambdas[1], []float64{-0.5}, o, rng, &s)
+			linear := Linear{Setting: Setting{Design: design}}
+			f.Solve(d, design, Designs[design].Lambdas[1], []float64{-0.5}, o, rng, &s, func(_ int, p Pair) {
+				linear.Pairs = append(linear.Pairs, p)
+			})
 			var in Input
 			out = append(out, f.scores(d, fold, func(i int, dst []float64) {
 				f.Input(d, i, &in)
-				linear[0].Score(&in, dst)
+				linear.Score(&in, dst)
 			}))
 		}
 	}
@@ -190,7 +193,7 @@ func TestForgetKeepsOnlyTheListedSettings(t *testing.T) {
 	var s chain.Scratch
 	f.Grow(d, dealt(d, 3), rng)
 	for _, lambda := range []float64{1e-3, 1e-2} {
-		f.Solve(d, 0, lambda, Qs[:], chain.PortfolioOptions{}, rng, &s)
+		f.Solve(d, 0, lambda, Qs[:], chain.PortfolioOptions{}, rng, &s, func(int, Pair) {})
 	}
 	f.Forget([]Setting{{Design: 0, Lambda: 1e-2, Q: 0}})
 	if len(f.runs) != 1 {

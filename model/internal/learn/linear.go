@@ -45,17 +45,15 @@ func AddTally(all, more []Tally) []Tally {
 }
 
 // Solve fits linear scorers of one design and λ at every q of qs: along one graduated run when cold, from the last
-// states when warm, each then followed by the portfolio's other chains, if o asks for any. It returns with them how the
-// chains did.
-func (f *Fold) Solve(d *Data, design int, lambda float64, qs []float64, o chain.PortfolioOptions, rng *rand.Rand, s *chain.Scratch) ([]Linear, []Tally) {
-	out := make([]Linear, len(qs))
-	for j, q := range qs {
-		out[j].Setting = Setting{design, lambda, q}
+// states when warm, each then followed by the portfolio's other chains, if o asks for any. take gets the pairs of each q
+// as they are done: weights of all pairs at once would be most of the memory of a search over many classes. Solve returns
+// how the chains did; a design that d has no features for gives nothing.
+func (f *Fold) Solve(d *Data, design int, lambda float64, qs []float64, o chain.PortfolioOptions, rng *rand.Rand, s *chain.Scratch, take func(q int, p Pair)) []Tally {
+	des := &Designs[design]
+	if des.Kernel > 0 && d.Kernels[des.Kernel-1] == nil || des.Leaf > 0 && d.Leafless {
+		return nil
 	}
-	if k := Designs[design].Kernel; k > 0 && d.Kernels[k-1] == nil {
-		return nil, nil
-	}
-	m := f.matrix(d, &Designs[design])
+	m := f.matrix(d, des)
 	if f.runs == nil {
 		f.runs = make(map[run]*done)
 	}
@@ -67,12 +65,13 @@ func (f *Fold) Solve(d *Data, design int, lambda float64, qs []float64, o chain.
 		}
 		r := run{design, lambda, ab[0], ab[1]}
 		states := f.solve(d, p, f.runs[r], qs, o, &tally, rng, s)
-		f.runs[r] = keep(p, qs, states)
 		for j := range qs {
-			out[j].Pairs = append(out[j].Pairs, Pair{A: ab[0], B: ab[1], W: states[j].W})
+			take(j, Pair{A: ab[0], B: ab[1], W: states[j].W})
+			states[j].W = nil // a warm run builds its own
 		}
+		f.runs[r] = keep(p, qs, states)
 	}
-	return out, tally
+	return tally
 }
 
 // Forget drops what a search left behind of other settings than the listed ones.

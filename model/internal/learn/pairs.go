@@ -5,6 +5,13 @@ import (
 	"slices"
 )
 
+// mostWeights is the most weights that leaves may have in one scorer, 8 bytes each: some 100 pairs of classes of 20,000
+// rows. Above it the forests' votes, numbers and kernel features do without them.
+const mostWeights = 16 << 20
+
+// ChooseLeaves tells d whether there is memory for designs with leaves, of which a forest has so many.
+func ChooseLeaves(d *Data, leaves int) { d.Leafless = len(d.Pairs)*leaves > mostWeights }
+
 // With more than manyClasses classes, each is told apart only from the nearPairs classes it is most often taken for.
 const (
 	manyClasses = 12

@@ -76,35 +76,36 @@ func PairScale(pairs, classes int) float64 { return 2 / float64(1+2*pairs/classe
 // Score writes the class scores of l: of each class twice the sum of its clipped pair decisions, over one more than
 // the mean number of a class's pairs: 2/k times the sum where all pairs are there. len(dst) = k.
 func (l *Linear) Score(in *Input, dst []float64) {
-	d := &Designs[l.Design]
 	clear(dst)
+	scale := PairScale(len(l.Pairs), len(dst))
+	for k := range l.Pairs {
+		p := &l.Pairs[k]
+		v := l.Decide(in, p) * scale
+		dst[p.A] += v
+		dst[p.B] -= v
+	}
+}
+
+// Decide is the clipped decision of one pair of a scorer with this setting, positive for the pair's class A.
+func (s Setting) Decide(in *Input, p *Pair) float64 {
+	d := &Designs[s.Design]
 	x := in.Dense
 	if d.Kernel > 0 {
 		x = in.Smooth[d.Kernel-1]
 	}
 	n := len(x)
-	leaf := 0.0
+	w := p.W[:n]
+	dot := 0.0
+	for j, v := range x[:n-1] {
+		dot += float64(v) * w[j]
+	}
+	v := d.Number*dot + w[n-1]
 	if d.Leaf > 0 {
-		leaf = d.Leaf / math.Sqrt(float64(len(in.Leaves)))
-	}
-	scale := PairScale(len(l.Pairs), len(dst))
-	for k := range l.Pairs {
-		p := &l.Pairs[k]
-		w := p.W[:n]
-		dot := 0.0
-		for j, v := range x[:n-1] {
-			dot += float64(v) * w[j]
+		w, sum := p.W[n:], 0.0
+		for _, j := range in.Leaves {
+			sum += w[j]
 		}
-		v := d.Number*dot + w[n-1]
-		if d.Leaf > 0 {
-			w, sum := p.W[n:], 0.0
-			for _, j := range in.Leaves {
-				sum += w[j]
-			}
-			v += leaf * sum
-		}
-		v = min(max(v, -Clip), Clip) * scale
-		dst[p.A] += v
-		dst[p.B] -= v
+		v += d.Leaf / math.Sqrt(float64(len(in.Leaves))) * sum
 	}
+	return min(max(v, -Clip), Clip)
 }
