@@ -47,6 +47,7 @@ func (r *reader) failsWith(k int) (fails bool) {
 	if err != nil {
 		return true
 	}
+	m.most = r.msgs.most
 	m.keep = func(meta []byte) {
 		switch {
 		case fbRoot(meta).byte(1, 0) != headerRecord:

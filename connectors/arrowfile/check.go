@@ -39,8 +39,8 @@ func (m *messages) check(root fbTable, body int64) error {
 }
 
 // unpackable looks at what the compressed buffers of a record or dictionary message say they unpack to, for so much is
-// allocated. One byte of LZ4 stands for at most 255, and four of Zstandard for a block of 128 KiB (RFC 8878, 3.1.1.2).
-func unpackable(root fbTable, body []byte) error {
+// allocated, and at their sum. One byte of LZ4 stands for at most 255, and four of Zstandard for a block of 128 KiB (RFC 8878, 3.1.1.2).
+func unpackable(root fbTable, body []byte, most int64) error {
 	if kind := root.byte(1, 0); kind != headerRecord && kind != headerDictionary {
 		return nil
 	}
@@ -54,6 +54,7 @@ func unpackable(root fbTable, body []byte) error {
 	}
 	ratio := int64([...]int{255, 128 << 10 / 4}[how.byte(0, 0)])
 	pos, n := rec.vector(2)
+	sum := int64(0)
 	for i := range n {
 		at := rec.b[pos+16*i:]
 		off, size := int64(binary.LittleEndian.Uint64(at)), int64(binary.LittleEndian.Uint64(at[8:]))
@@ -67,8 +68,18 @@ func unpackable(root fbTable, body []byte) error {
 		if full < -1 || full > 128<<10+ratio*(size-8) { // −1: it is not compressed after all
 			return fmt.Errorf("buffer %d of %d bytes can't unpack to %d", i, size, full)
 		}
+		if sum += max(full, size-8); most > 0 && sum > most {
+			return &tooLarge{sum, most}
+		}
 	}
 	return nil
+}
+
+// tooLarge is a message that takes more memory than it may.
+type tooLarge struct{ wanted, most int64 }
+
+func (e *tooLarge) Error() string {
+	return fmt.Sprintf("it unpacks to %d MB or more, and %d may be", e.wanted>>20, e.most>>20)
 }
 
 // A schema has at most so many fields, nested so deep: arrow/go reads 64 levels.

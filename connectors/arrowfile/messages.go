@@ -60,6 +60,7 @@ type messages struct {
 	schema []byte // head of the schema message
 	head   []byte // head of the last message, as it was found
 
+	most int64             // bytes that a message may unpack to; 0: no limit
 	keep func(meta []byte) // see blame: changes the head of a message
 }
 
@@ -186,7 +187,7 @@ func (m *messages) Message() (*ipc.Message, error) {
 	if err := m.readBody(next, int(n)); err != nil {
 		return nil, err
 	}
-	if err := unpackable(root, m.body); err != nil {
+	if err := unpackable(root, m.body, m.most); err != nil {
 		return nil, err
 	}
 	m.Release()

@@ -32,6 +32,7 @@ func newReader(f table.File, opt table.ReadOptions) (r *reader, err error) {
 		}
 		return nil, r.damaged("its layout can't be read", err)
 	}
+	r.msgs.most = opt.MostBatch
 	if r.rd, err = ipc.NewReaderFromMessageReader(r.msgs, ipc.WithAllocator(capped.New(opt.Memory, f.Size))); err != nil {
 		r.msgs.Release()
 		return nil, r.damaged("its schema can't be read", err)
@@ -80,6 +81,9 @@ func (r *reader) Next() (rec arrow.Record, err error) {
 		if err := r.rd.Err(); err != nil {
 			e := r.damaged("the record batch can't be read", err).(*table.Error)
 			e.Column = r.blame()
+			if large := (*tooLarge)(nil); errors.As(err, &large) {
+				e.Do = "the file is damaged, or wants smaller record batches or a higher limit of memory"
+			}
 			return nil, e
 		}
 		if n := r.msgs.missing(); n > 0 {

@@ -79,6 +79,8 @@ type ReadOptions struct {
 	Delimiter byte
 	// MostRow is the most bytes that one row may have, above 0. Only for formats of text.
 	MostRow int
+	// MostBatch is the most bytes that a compressed record batch may unpack to; 0: no limit.
+	MostBatch int64
 	// Mark, if set, is told before a record batch is read where it stands, and before each column of it where that is
 	// known, so that it can still be said when reading ends the process.
 	Mark func(at Place, column string)

@@ -89,7 +89,8 @@ func (in *input) open() (err error) {
 		return err
 	}
 	rd, err := format.Open(f, ReadOptions{Rows: in.opt.Rows, Peek: in.opt.Peek, Like: in.like, Text: in.text,
-		Unreadable: in.opt.Unreadable, Delimiter: in.opt.Delimiter, MostRow: in.opt.MostRow, Mark: in.opt.Mark, Memory: in.opt.Memory})
+		Unreadable: in.opt.Unreadable, Delimiter: in.opt.Delimiter, MostRow: in.opt.MostRow,
+		MostBatch: in.opt.MostBatch, Mark: in.opt.Mark, Memory: in.opt.Memory})
 	if err != nil {
 		return err
 	}

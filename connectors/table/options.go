@@ -17,6 +17,7 @@ type Options struct {
 	InFormat   string                 // name of the input's format; empty: from its first bytes, else from the file's name
 	Delimiter  byte                   // between the cells of a CSV file; 0: found out
 	MostRow    int                    // most bytes of one row of text; default 64 MiB
+	MostBatch  int64                  // most bytes that a compressed record batch may unpack to; 0: no limit
 	Unreadable func(Unreadable) error // takes rows that can't be read, in order; nil: the first is an error
 
 	Mark func(at Place, column string) // see ReadOptions.Mark

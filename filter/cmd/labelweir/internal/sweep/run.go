@@ -131,6 +131,9 @@ func optionsOf(c *config.Config, w Watch) table.Options {
 	options.InFormat, options.Delimiter = c.Input.Format, c.Input.Delimiter
 	options.OutFormat, options.Replace = c.Output.Format, c.Output.Replace
 	options.Mark, options.Disk, options.Pipe = marker(w.Marks), w.Disk, w.Out
+	if w.Marks != nil { // one record batch is read while another is used, and more waits for the collector
+		options.MostBatch = c.MemoryLimit() / 3
+	}
 	return options
 }
 
