@@ -2,7 +2,6 @@ package arrowfile
 
 import (
 	"encoding/binary"
-	"slices"
 	"sort"
 
 	"github.com/apache/arrow/go/v16/arrow"
@@ -52,9 +51,9 @@ func (r *reader) failsWith(k int) (fails bool) {
 		switch {
 		case fbRoot(meta).byte(1, 0) != headerRecord:
 		case m.batch+1 < r.msgs.at: // read already, and only in the way here
-			empty(meta, r.rd.Schema(), 0)
+			empty(meta, r.msgs.schema, 0)
 		default:
-			empty(meta, r.rd.Schema(), k)
+			empty(meta, r.msgs.schema, k)
 		}
 	}
 	rd, err := ipc.NewReaderFromMessageReader(m, ipc.WithAllocator(capped.New(memory.NewGoAllocator(), m.size)))
@@ -70,9 +69,9 @@ func (r *reader) failsWith(k int) (fails bool) {
 	return false
 }
 
-// empty takes the columns from k on out of the head of a record batch: they have no rows, and their buffers no bytes. The
+// empty takes the columns from k on out of the head of a record batch, with the head of the schema message: they have no rows, and their buffers no bytes. The
 // batch has no rows either, for arrow refuses columns that are shorter.
-func empty(meta []byte, schema *arrow.Schema, k int) {
+func empty(meta, schema []byte, k int) {
 	le := binary.LittleEndian
 	root := fbRoot(meta)
 	rec, _ := root.table(2)
@@ -80,56 +79,13 @@ func empty(meta []byte, schema *arrow.Schema, k int) {
 		le.PutUint64(rec.b[p:], 0)
 	}
 	c := share{old: root.int16(0) < 4, views: rec.int64s(4)}
-	for _, f := range schema.Fields()[:k] {
-		c.count(f.Type)
+	for _, f := range fieldsOf(schema)[:k] {
+		c.count(f, false, 0)
 	}
 	for _, list := range []struct{ slot, from int }{{1, c.nodes}, {2, c.buffers}} {
 		pos, n := rec.vector(list.slot)
 		for i := list.from; i < n; i++ {
 			clear(rec.b[pos+16*i : pos+16*i+16]) // a node's rows and nulls, or a buffer's place and length
-		}
-	}
-}
-
-// share adds up how many field nodes and buffers of a record batch columns take, as the format has them.
-type share struct {
-	old            bool    // before version 5: unions have a bitmap of nulls
-	views          []int64 // buffers of each column of views, in turn
-	nodes, buffers int
-}
-
-func (c *share) count(dt arrow.DataType) {
-	if ext, ok := dt.(arrow.ExtensionType); ok {
-		c.count(ext.StorageType())
-		return
-	}
-	c.nodes++
-	switch dt := dt.(type) {
-	case *arrow.NullType, *arrow.RunEndEncodedType:
-	case *arrow.BinaryType, *arrow.StringType, *arrow.LargeStringType, *arrow.LargeBinaryType, *arrow.ListViewType, *arrow.LargeListViewType:
-		c.buffers += 3
-	case arrow.BinaryViewDataType:
-		c.buffers += 2 + int(c.views[0])
-		c.views = c.views[1:]
-	case *arrow.FixedSizeListType, *arrow.StructType:
-		c.buffers++
-	case arrow.UnionType:
-		c.buffers++
-		if dt.Mode() == arrow.DenseMode {
-			c.buffers++
-		}
-		if c.old {
-			c.buffers++
-		}
-	default:
-		c.buffers += 2
-	}
-	if _, ok := dt.(*arrow.DictionaryType); ok {
-		return // its values come in messages of their own
-	}
-	if nested, ok := dt.(arrow.NestedType); ok {
-		for _, f := range nested.Fields() {
-			c.count(f.Type)
 		}
 	}
 }
@@ -153,22 +109,10 @@ func (m *messages) recordAtFault() []byte {
 
 // columnOfDictionary is the column, by the head of the schema message, in which the dictionary of that number is used.
 func columnOfDictionary(head []byte, schema *arrow.Schema, id int64) string {
-	t, ok := fbRoot(head).table(2)
-	if !ok {
-		return ""
-	}
-	for i, f := range t.tables(1) {
-		if usesDictionary(f, id, 0) && i < schema.NumFields() {
+	for i, f := range fieldsOf(head) {
+		if _, ok := encodedField(f, id, 0); ok && i < schema.NumFields() {
 			return schema.Field(i).Name
 		}
 	}
 	return ""
-}
-
-// usesDictionary looks at a Field table and its children.
-func usesDictionary(f fbTable, id int64, depth int) bool {
-	if d, ok := f.table(4); ok && d.int64(0) == id {
-		return true
-	}
-	return depth < mostDepth && slices.ContainsFunc(f.tables(5), func(c fbTable) bool { return usesDictionary(c, id, depth+1) })
 }

@@ -21,6 +21,9 @@ func (m *messages) check(root fbTable, body int64) error {
 	case kind != headerDictionary:
 		return nil
 	}
+	if err := m.enough(root, rec); err != nil {
+		return err
+	}
 	pos, n := rec.vector(4) // of views, how many buffers hold their bytes
 	for i := range n {
 		if k := int64(binary.LittleEndian.Uint64(rec.b[pos+8*i:])); k < 0 || k > int64(len(rec.b)) {
