@@ -156,4 +156,3 @@ func (f *fitting) whole(ctx context.Context) error {
 
 // swiftRows is from how many rows on two epochs bring the weights close enough to their optimum for the flags to be renewed.
 const swiftRows = 8000
-
