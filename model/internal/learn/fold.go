@@ -26,7 +26,7 @@ func TreeCount(n int) int { return min(max(200000/max(n, 1), 100), 200) }
 const fewRows = 8000
 
 // regrow is the share of the trees that a warm fit replaces, oldest first.
-const regrow = 0.1
+const regrow = 0.05
 
 // Grow brings the fold's forests up to date with d: all trees anew on a cold fit, some on a warm one. fold gives each
 // row's fold.
