@@ -2,6 +2,7 @@ package parquet
 
 import (
 	"bytes"
+	"encoding/base64"
 	"encoding/binary"
 	"errors"
 	"fmt"
@@ -9,6 +10,7 @@ import (
 	"github.com/apache/arrow/go/v16/parquet/compress"
 	"github.com/apache/arrow/go/v16/parquet/metadata"
 
+	"labelweir/connectors/arrowfile"
 	"labelweir/connectors/table"
 )
 
@@ -73,6 +75,22 @@ func groupsFit(m *metadata.FileMetaData, size int64) (group int, column string, 
 		return 0, "", fmt.Errorf("%d rows in its row groups, %d in all", rows, m.NumRows)
 	}
 	return 0, "", nil
+}
+
+// schemaFits looks at the Arrow schema in the footer, if there is one.
+func schemaFits(kv metadata.KeyValueMetadata) error {
+	text := kv.FindValue(schemaKey)
+	if text == nil {
+		return nil
+	}
+	b, err := base64.StdEncoding.DecodeString(*text)
+	if err != nil { // some leave the padding out
+		b, err = base64.RawStdEncoding.DecodeString(*text)
+	}
+	if err != nil {
+		return err
+	}
+	return arrowfile.SchemaFits(b)
 }
 
 func columnFits(c *metadata.ColumnChunkMetaData, size int64) error {

@@ -15,6 +15,7 @@ import (
 	"github.com/apache/arrow/go/v16/parquet/file"
 	"github.com/apache/arrow/go/v16/parquet/pqarrow"
 
+	"labelweir/connectors/arrowfile"
 	"labelweir/connectors/internal/capped"
 	"labelweir/connectors/table"
 )
@@ -82,6 +83,9 @@ func (r *reader) open(f table.File) error {
 	if group, column, err := groupsFit(r.pf.MetaData(), f.Size); err != nil {
 		r.group = group
 		return r.damaged("its footer makes no sense", column, err)
+	}
+	if err := schemaFits(r.pf.MetaData().KeyValueMetadata()); err != nil {
+		return r.damaged("its schema can't be read", "", err)
 	}
 	if r.fr, err = pqarrow.NewFileReader(r.pf, pqarrow.ArrowReadProperties{BatchSize: mostRows}, r.mem); err != nil {
 		return r.damaged("its schema can't be read", "", err)
@@ -198,6 +202,10 @@ func (r *reader) field(i int, leaves map[int]bool) (field *pqarrow.ColumnReader,
 			field, err = nil, table.Caught(p)
 		}
 	}()
+	r.opt.Tell(r.Place(), r.schema.Field(i).Name)
+	if err := r.probe(i); err != nil {
+		return nil, err
+	}
 	field, err = r.fr.GetFieldReader(context.Background(), i, leaves, []int{r.group - 1})
 	if err == nil && field == nil {
 		err = errors.New("it has no values")
@@ -229,6 +237,9 @@ func (r *reader) column(i int, n int64) (arr arrow.Array, err error) {
 		return nil, err
 	}
 	defer arr.Release()
+	if err := arrowfile.ValuesFit(arr); err != nil {
+		return nil, err
+	}
 	if r.fixed[i] != nil {
 		return tighten(arr.(*array.List), r.fixed[i], r.mem)
 	}
