@@ -27,11 +27,7 @@ func (s *Scratch) dot(i int) float64 {
 
 // add adds t·x of packed row i to w. The caller says moved when it is done with all rows.
 func (s *Scratch) add(i int, t float64) {
-	x := s.number(i)
-	w := s.w[:len(x)]
-	for k, v := range x {
-		w[k] += t * float64(v)
-	}
+	addDense(s.w, t, s.number(i))
 	t *= s.value
 	if s.thin != nil {
 		w := (*[narrow]float64)(s.wide)
@@ -40,7 +36,7 @@ func (s *Scratch) add(i int, t float64) {
 		}
 		return
 	}
-	w = s.w[s.dense:]
+	w := s.w[s.dense:]
 	for _, c := range s.columnsOf(i) {
 		w[c] += t
 	}
@@ -54,24 +50,7 @@ func (s *Scratch) leaf(i, t int) int {
 	return s.dense + int(s.columnsOf(i)[t])
 }
 
-// dotDense is Σ x·w over the length of x, in four sums so that additions need not wait for each other.
-func dotDense(x []float32, w []float64) float64 {
-	w = w[:len(x)]
-	var a, b, c, d float64
-	for len(x) >= 4 && len(w) >= 4 {
-		a += float64(x[0]) * w[0]
-		b += float64(x[1]) * w[1]
-		c += float64(x[2]) * w[2]
-		d += float64(x[3]) * w[3]
-		x, w = x[4:], w[4:]
-	}
-	for k, v := range x {
-		a += float64(v) * w[k]
-	}
-	return (a + b) + (c + d)
-}
-
-// squares32 is Σ x², in four sums as well.
+// squares32 is Σ x², in four sums so that additions need not wait for each other.
 func squares32(x []float32) float64 {
 	var a, b, c, d float64
 	for len(x) >= 4 {
