@@ -18,6 +18,9 @@ import (
 	"github.com/apache/arrow/go/v16/arrow/array"
 	"github.com/apache/arrow/go/v16/arrow/ipc"
 	"github.com/apache/arrow/go/v16/arrow/memory"
+	goparquet "github.com/apache/arrow/go/v16/parquet"
+	"github.com/apache/arrow/go/v16/parquet/compress"
+	"github.com/apache/arrow/go/v16/parquet/pqarrow"
 )
 
 // What a sweep of one damaged file may take at the command: address space beyond the program's own, and time, most of
@@ -62,7 +65,9 @@ func TestDamagedAtTheCommand(t *testing.T) {
 	}
 	t.Logf("%d inputs ended with 0, %d with 65", codes[0], codes[65])
 	for name, b := range bombs(t) {
+		began := time.Now()
 		sweep("a bomb of "+strconv.Itoa(len(b))+" bytes", damaged{base{name: name, label: "grade"}, "unpacks to gigabytes", b})
+		t.Logf("%s, %d bytes: %v", name, len(b), time.Since(began).Round(time.Millisecond))
 	}
 }
 
@@ -146,5 +151,38 @@ func bombs(t *testing.T) map[string][]byte {
 		rec.Release()
 		files[name] = read(t, path)
 	}
+	if os.Getenv("LABELWEIR_LONG") == "" {
+		return files
+	}
+	files["pages.parquet"] = hugePages(t)
+	files["line.csv"] = append([]byte("size,grade\n1,a\n2,\""), bytes.Repeat([]byte("long "), 14<<20)...)
+	files["line.jsonl"] = append([]byte(`{"size":1,"grade":"a"}`+"\n"+`{"size":2,"grade":"`), bytes.Repeat([]byte("long "), 14<<20)...)
 	return files
+}
+
+// hugePages is a Parquet file of columns of one page each, of zeros that unpack to 64 MB.
+func hugePages(t *testing.T) []byte {
+	t.Helper()
+	const rows = 8 << 20
+	numbers := array.NewData(arrow.PrimitiveTypes.Float64, rows, []*memory.Buffer{nil, memory.NewBufferBytes(make([]byte, 8*rows))}, nil, 0, 0)
+	defer numbers.Release()
+	var fields []arrow.Field
+	var cols []arrow.Array
+	for i := range 32 {
+		fields = append(fields, arrow.Field{Name: []string{"grade", "size_" + strconv.Itoa(i)}[min(i, 1)], Type: arrow.PrimitiveTypes.Float64})
+		cols = append(cols, array.MakeFromData(numbers))
+	}
+	schema := arrow.NewSchema(fields, nil)
+	rec := array.NewRecord(schema, cols, rows)
+	defer rec.Release()
+	var out bytes.Buffer
+	w, err := pqarrow.NewFileWriter(schema, &out, goparquet.NewWriterProperties(goparquet.WithDictionaryDefault(false),
+		goparquet.WithCompression(compress.Codecs.Zstd), goparquet.WithDataPageSize(1<<30), goparquet.WithBatchSize(rows)), pqarrow.DefaultWriterProps())
+	if err != nil {
+		t.Fatal(err)
+	}
+	if err := errors.Join(w.Write(rec), w.Close()); err != nil {
+		t.Fatal(err)
+	}
+	return out.Bytes()
 }
