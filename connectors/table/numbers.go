@@ -7,6 +7,8 @@ import (
 
 	"github.com/apache/arrow/go/v16/arrow"
 	"github.com/apache/arrow/go/v16/arrow/array"
+
+	"labelweir/connectors/internal/half"
 )
 
 // isNumber tells whether values of a type are read as numbers. Durations count in their own unit.
@@ -29,7 +31,7 @@ func appendNumbers(dst []float64, arr arrow.Array) ([]float64, error) {
 		dst = widen(dst, a.Float32Values())
 	case *array.Float16:
 		for _, v := range a.Values() {
-			dst = append(dst, float64(v.Float32()))
+			dst = append(dst, half.Value(v.Uint16()))
 		}
 	case *array.Int8:
 		dst = widen(dst, a.Int8Values())

@@ -7,6 +7,7 @@ import (
 
 	"github.com/apache/arrow/go/v16/arrow"
 	"github.com/apache/arrow/go/v16/arrow/array"
+	"github.com/apache/arrow/go/v16/arrow/float16"
 	"github.com/apache/arrow/go/v16/arrow/memory"
 
 	"labelweir/filter"
@@ -52,6 +53,16 @@ func TestInfinitePassesAndNaNIsMissing(t *testing.T) {
 	b.AppendValues([]float32{float32(math.Inf(1)), float32(math.Inf(-1)), float32(math.NaN()), 1}, []bool{true, true, true, false})
 	got, err := appendNumbers(nil, b.NewArray())
 	if s := fmt.Sprint(got); err != nil || s != "[+Inf -Inf NaN NaN]" {
+		t.Errorf("got %s, %v", s, err)
+	}
+}
+
+// 1 is the smallest number of 16 bits, 2⁻²⁴ (IEEE 754); arrow/go reads it as 0.
+func TestSmallHalvesAreNumbers(t *testing.T) {
+	b := array.NewFloat16Builder(memory.DefaultAllocator)
+	b.AppendValues([]float16.Num{float16.FromBits(1), float16.FromBits(0x3c00), float16.FromBits(1)}, []bool{true, true, false})
+	got, err := appendNumbers(nil, b.NewArray())
+	if s := fmt.Sprint(got); err != nil || s != "[5.960464477539063e-08 1 NaN]" {
 		t.Errorf("got %s, %v", s, err)
 	}
 }

@@ -7,7 +7,8 @@ import (
 
 	"github.com/apache/arrow/go/v16/arrow"
 	"github.com/apache/arrow/go/v16/arrow/array"
-	"github.com/apache/arrow/go/v16/arrow/float16"
+
+	"labelweir/connectors/internal/half"
 )
 
 // number is the speller of an array of numbers or booleans, nil for another.
@@ -35,7 +36,7 @@ func number(arr arrow.Array, json bool) Speller {
 	case *array.Duration:
 		return whole(a.DurationValues())
 	case *array.Float16:
-		return func(dst []byte, i int) ([]byte, bool) { return half(dst, a.Value(i), json) }
+		return func(dst []byte, i int) ([]byte, bool) { return binary16(dst, a.Value(i).Uint16(), json) }
 	case *array.Float32:
 		v := a.Float32Values()
 		return func(dst []byte, i int) ([]byte, bool) { return Float(dst, float64(v[i]), 32, json) }
@@ -90,13 +91,13 @@ func notFinite(dst []byte, v float64) []byte {
 	return append(dst, "NaN"...)
 }
 
-// half appends the shortest decimal that lies nearer to a number of 16 bits than to its neighbours.
-func half(dst []byte, h float16.Num, finite bool) ([]byte, bool) {
-	v := halfValue(h.Uint16())
+// binary16 appends the shortest decimal that lies nearer to a number of 16 bits than to its neighbours.
+func binary16(dst []byte, bits uint16, finite bool) ([]byte, bool) {
+	v := half.Value(bits)
 	if v == 0 || math.IsNaN(v) || math.IsInf(v, 0) {
 		return Float(dst, v, 32, finite)
 	}
-	below := halfValue(h.Uint16() - 1)
+	below := half.Value(bits - 1)
 	room := math.Abs(v-below) / 2 // the neighbour away from zero is no nearer
 	lo := len(dst)
 	for digits := 1; ; digits++ {
@@ -105,22 +106,6 @@ func half(dst []byte, h float16.Num, finite bool) ([]byte, bool) {
 			return strconv.AppendFloat(dst[:lo], x, notation(x), -1, 64), false
 		}
 	}
-}
-
-// halfValue is the value of a number of 16 bits (IEEE 754, binary16). arrow/go v16 takes the smallest ones for zero.
-func halfValue(bits uint16) float64 {
-	v := 0.
-	switch exp, frac := int(bits>>10&31), float64(bits&1023); exp {
-	case 0:
-		v = math.Ldexp(frac, -24)
-	case 31:
-		if v = math.Inf(1); frac > 0 {
-			return math.NaN()
-		}
-	default:
-		v = math.Ldexp(1024+frac, exp-25)
-	}
-	return math.Copysign(v, 1-2*float64(bits>>15))
 }
 
 // decimal appends v·10^−scale with all its digits.

@@ -13,9 +13,9 @@ import (
 	"github.com/apache/arrow/go/v16/arrow"
 	"github.com/apache/arrow/go/v16/arrow/array"
 	"github.com/apache/arrow/go/v16/arrow/decimal128"
-	"github.com/apache/arrow/go/v16/arrow/float16"
 	"github.com/apache/arrow/go/v16/arrow/memory"
 
+	"labelweir/connectors/internal/half"
 	"labelweir/connectors/table"
 )
 
@@ -163,18 +163,18 @@ func TestNumbersReadBackTheSame(t *testing.T) {
 // Every number of 16 bits is nearer to its text than its neighbours are, and the text is short.
 func TestHalvesReadBackTheSame(t *testing.T) {
 	for bits := range 1 << 16 {
-		v := halfValue(uint16(bits))
+		v := half.Value(uint16(bits))
 		if math.IsNaN(v) || math.IsInf(v, 0) {
 			continue
 		}
-		b, _ := half(nil, float16.FromBits(uint16(bits)), true)
+		b, _ := binary16(nil, uint16(bits), true)
 		back, err := strconv.ParseFloat(string(b), 64)
 		if err != nil || math.Signbit(back) != math.Signbit(v) {
 			t.Fatalf("%v: %s", v, b)
 		}
 		for _, other := range []int{bits - 1, bits + 1} {
-			if other&0x7fff < 0x7c00 && other>>15 == bits>>15 && math.Abs(back-halfValue(uint16(other))) <= math.Abs(back-v) {
-				t.Fatalf("%v: %s is nearer to %v", v, b, halfValue(uint16(other)))
+			if other&0x7fff < 0x7c00 && other>>15 == bits>>15 && math.Abs(back-half.Value(uint16(other))) <= math.Abs(back-v) {
+				t.Fatalf("%v: %s is nearer to %v", v, b, half.Value(uint16(other)))
 			}
 		}
 		if digits := len(strings.Trim(strings.ReplaceAll(strings.TrimLeft(string(b), "-"), ".", ""), "0")); digits > 5 && !strings.Contains(string(b), "e") {
