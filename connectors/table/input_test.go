@@ -136,6 +136,39 @@ func TestCellsBecomeValuesOnlyWhenAllDo(t *testing.T) {
 	}
 }
 
+// A crate's number has zeros in front, a phone number a plus, an identifier more digits than a number holds: behind the
+// rows that were looked at first, too, they stay text in another format.
+func TestCodesBehindTheFirstRowsStayText(t *testing.T) {
+	dir := t.TempDir()
+	rows := "x,crate,phone,serial,share,label\n" + strings.Repeat("1,12,49171,5,0.5,a\n2.5,13,49172,6.5,1.50,b\n", 10) + "3,007,+49173,12345678901234567890,0.70,a\n"
+	in, out := put(t, filepath.Join(dir, "in.csv"), rows), filepath.Join(dir, "out.arrows")
+	opt := options()
+	opt.Peek = 10
+	if err := carry(in, out, opt); err != nil {
+		t.Fatal(err)
+	}
+	f, err := os.Open(out)
+	if err != nil {
+		t.Fatal(err)
+	}
+	defer f.Close()
+	r, err := ipc.NewReader(f)
+	if err != nil {
+		t.Fatal(err)
+	}
+	defer r.Release()
+	if !r.Next() {
+		t.Fatal("no rows")
+	}
+	var got []string
+	for i, f := range r.Schema().Fields()[:5] {
+		got = append(got, f.Type.String()+" "+r.Record().Column(i).ValueStr(20))
+	}
+	if s, want := strings.Join(got, ", "), "float64 3, utf8 007, utf8 +49173, utf8 12345678901234567890, float64 0.7"; s != want {
+		t.Errorf("got %s, want %s", s, want)
+	}
+}
+
 func TestOutputsGoIntoAPipe(t *testing.T) {
 	in := put(t, filepath.Join(t.TempDir(), "in.csv"), "x,label\n1,a\n2,b\n")
 	var pipe bytes.Buffer

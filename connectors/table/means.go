@@ -88,7 +88,8 @@ func appendCellTimes(dst []int64, c cells) []int64 {
 	return dst
 }
 
-// meansAll tells whether every cell has no value or means one of the type.
+// meansAll tells whether every cell has no value or means one of the type that may stand for its text: of a number the
+// value must have all digits, so that codes such as 007 stay text.
 func meansAll(c cells, means arrow.DataType) bool {
 	for i := range c.arr.Len() {
 		b := c.at(i)
@@ -100,9 +101,9 @@ func meansAll(c cells, means arrow.DataType) bool {
 		case *arrow.BooleanType:
 			_, ok = cell.Bool(b)
 		case *arrow.Int64Type:
-			_, ok = cell.Int(b)
+			ok = cell.ExactInt(b)
 		case *arrow.Float64Type:
-			_, ok = cell.Number(b)
+			ok = cell.ExactNumber(b)
 		case *arrow.TimestampType:
 			_, ok = moment(b, dt)
 		}

@@ -1,8 +1,6 @@
 package cell
 
 import (
-	"bytes"
-
 	"github.com/apache/arrow/go/v16/arrow"
 )
 
@@ -35,10 +33,9 @@ func (g *Guess) Watch(b []byte) {
 	}
 }
 
-// watchNumber: digits behind a leading zero make a code, not a number: "0071".
+// watchNumber: a zero before a digit makes a code, not a number: "0071".
 func (g *Guess) watchNumber(b []byte) {
-	digits := bytes.TrimLeft(b, " \t+-")
-	if len(digits) > 1 && digits[0] == '0' && digits[1] >= '0' && digits[1] <= '9' {
+	if zeroLed(trim(b)) {
 		g.notNumber = true
 		return
 	}
