@@ -1,6 +1,8 @@
 package csv
 
 import (
+	"strings"
+
 	"labelweir/connectors/table"
 )
 
@@ -8,8 +10,13 @@ const formatName = "csv"
 
 // Format describes the format. Nothing at a file's beginning tells it, so it goes by the name.
 func Format() table.Format {
-	return table.Format{Name: formatName, Title: "CSV", Endings: []string{".csv", ".tsv"}, Pipe: true, Open: open, Create: create}
+	return table.Format{Name: formatName, Title: "CSV", Endings: []string{".csv", tabbed}, Pipe: true, Open: open, Create: create}
 }
+
+// tabbed is the ending of a name that promises tabs between the cells.
+const tabbed = ".tsv"
+
+func isTabbed(name string) bool { return strings.HasSuffix(strings.ToLower(name), tabbed) }
 
 // manner is how a file is written beyond its columns.
 type manner struct {

@@ -19,6 +19,8 @@ type writer struct {
 	raw    int // index of the hidden column, −1 when there is none
 	need   [256]bool
 
+	respell bool // write rows out of their cells, also when their bytes are there
+
 	spellers []spell.Speller // one a column, for the record batch at hand
 	buf      []byte
 	err      error // sticky
@@ -31,6 +33,10 @@ func create(w io.Writer, schema *arrow.Schema, opt table.WriteOptions) (table.Wr
 	out := &writer{w: w, schema: schema, raw: table.RawIndex(schema), manner: manner{delimiter: ',', newline: "\n"}}
 	if m, ok := opt.Manner.(manner); ok {
 		out.manner = m
+	}
+	if isTabbed(opt.Name) && out.manner.delimiter != '\t' { // the rows' own bytes are of no use then
+		out.manner = manner{delimiter: '\t', newline: out.manner.newline}
+		out.respell = true
 	}
 	for _, c := range []byte{out.manner.delimiter, '"', '\n', '\r'} {
 		out.need[c] = true
@@ -65,7 +71,7 @@ func (w *writer) Write(rec arrow.Record) error {
 		return w.err
 	}
 	var raws *array.Binary
-	if w.raw >= 0 {
+	if w.raw >= 0 && !w.respell {
 		raws = rec.Column(w.raw).(*array.Binary)
 	}
 	for i := range int(rec.NumRows()) {
@@ -86,11 +92,18 @@ func (w *writer) prepare(rec arrow.Record) (err error) {
 		if i == w.raw {
 			continue
 		}
-		if w.spellers[i], err = spell.Plain(arr); err != nil {
+		if b, ok := arr.(*array.Binary); ok && i < w.raw {
+			w.spellers[i] = bytesOf(b)
+		} else if w.spellers[i], err = spell.Plain(arr); err != nil {
 			return err
 		}
 	}
 	return nil
+}
+
+// bytesOf spells cells of a CSV file that are no UTF-8 as they came.
+func bytesOf(a *array.Binary) spell.Speller {
+	return func(dst []byte, i int) ([]byte, bool) { return append(dst, a.Value(i)...), a.IsNull(i) }
 }
 
 // row appends row i: its bytes as they came and the cells behind the hidden column, or all of its cells.

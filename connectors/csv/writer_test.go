@@ -33,6 +33,26 @@ func TestRowsComeBackByteForByteWithTheirTags(t *testing.T) {
 	}
 }
 
+// The same table goes under three names; a name in .tsv means tabs, whatever is between the input's cells.
+func TestNamesOfTabbedFilesGiveTabs(t *testing.T) {
+	for _, c := range []struct{ text, name, want string }{
+		{"a,b\r\n\"1\",\"x\ty\"\r\n,2\r\n", "out.TSV", "a\tb\r\n1\t\"x\ty\"\r\n\t2\r\n"},
+		{"a,b\n1,\"x;\"\"\"\n2,\xff\n", "out.tsv", "a\tb\n1\t\"x;\"\"\"\n2\t\xff\n"},
+		{"a,b\n\"1\",x\n", "out.csv", "a,b\n\"1\",x\n"},
+		{"a\tb\n\"1\"\tx\n", "out.tsv", "a\tb\n\"1\"\tx\n"},
+		{"a\tb\n\"1\"\tx\n", "", "a\tb\n\"1\"\tx\n"},
+	} {
+		rd := must(open(file(c.text), options(t)))
+		var out bytes.Buffer
+		w := must(create(&out, rd.Schema(), table.WriteOptions{Name: c.name, Manner: rd.(table.Manner).Manner(), Memory: memory.DefaultAllocator}))
+		rec := must(rd.Next())
+		if err := errors.Join(w.Write(rec), w.Close()); err != nil || out.String() != c.want {
+			t.Errorf("%s of %q: got %q, %v, want %q", c.name, c.text, out.String(), err, c.want)
+		}
+		rec.Release()
+	}
+}
+
 func TestASecondFileWithAnotherDelimiterIsWrittenLikeTheFirst(t *testing.T) {
 	opt := options(t)
 	first := must(open(file("a,b\n1,x\n"), opt))

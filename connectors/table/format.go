@@ -97,6 +97,7 @@ func (o *ReadOptions) Tell(at Place, column string) {
 
 // WriteOptions are what a Writer is created with.
 type WriteOptions struct {
+	Name   string           // of the file to be; empty when it has none
 	Manner any              // of the input's Reader when it has the same format, else nil
 	Memory memory.Allocator // never nil
 }

@@ -169,6 +169,18 @@ func TestCodesBehindTheFirstRowsStayText(t *testing.T) {
 	}
 }
 
+func TestTabbedFilesOfAnotherFormatHaveTabs(t *testing.T) {
+	dir := t.TempDir()
+	in, out := put(t, filepath.Join(dir, "in.jsonl"), `{"x":1,"label":"a"}`+"\n"), filepath.Join(dir, "out.tsv")
+	if err := carry(in, out, options()); err != nil {
+		t.Fatal(err)
+	}
+	b, err := os.ReadFile(out)
+	if s := string(b); err != nil || !strings.HasPrefix(s, "x\tlabel\tweir_score") || !strings.Contains(s, "\n1\ta\t") || strings.Contains(s, ",") {
+		t.Errorf("got %q, %v", b, err)
+	}
+}
+
 func TestOutputsGoIntoAPipe(t *testing.T) {
 	in := put(t, filepath.Join(t.TempDir(), "in.csv"), "x,label\n1,a\n2,b\n")
 	var pipe bytes.Buffer

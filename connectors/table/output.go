@@ -50,6 +50,9 @@ func newOutput(t *Target, src *Source, opt Options) (*output, error) {
 	meta := base.Metadata()
 	o.schema = arrow.NewSchema(append(slices.Clone(base.Fields()), tagFields()...), &meta)
 	how := WriteOptions{Memory: opt.Memory}
+	if !t.pipe {
+		how.Name = t.path
+	}
 	if o.format.Name == src.in.format.Name {
 		how.Manner = src.in.manner()
 	}
