@@ -11,6 +11,7 @@ import (
 
 	"github.com/apache/arrow/go/v16/arrow/memory"
 
+	"labelweir/connectors/internal/textrows"
 	"labelweir/connectors/table"
 )
 
@@ -72,9 +73,9 @@ func BenchmarkEncodingCSVCopy(b *testing.B) {
 	b.SetBytes(f.Size)
 	b.ReportAllocs()
 	for b.Loop() {
-		r := csv.NewReader(bufio.NewReaderSize(io.NewSectionReader(f, 0, f.Size), flushBytes))
+		r := csv.NewReader(bufio.NewReaderSize(io.NewSectionReader(f, 0, f.Size), textrows.FlushBytes))
 		r.ReuseRecord = true
-		w := csv.NewWriter(bufio.NewWriterSize(io.Discard, flushBytes))
+		w := csv.NewWriter(bufio.NewWriterSize(io.Discard, textrows.FlushBytes))
 		for {
 			row, err := r.Read()
 			if err == io.EOF {

@@ -25,8 +25,6 @@ type manner struct {
 	newline   string // behind each row: LF or CR LF
 }
 
-func open(f table.File, opt table.ReadOptions) (table.Reader, error) { return newReader(f, opt) }
-
 // delimiters are those that are told by looking at the first rows, the likelier first.
 const delimiters = ",;\t|"
 

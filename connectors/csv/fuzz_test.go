@@ -40,7 +40,7 @@ func nothingLost(t *testing.T, b []byte, mostRow int) {
 		}
 		return
 	}
-	got.Write(rd.(*reader).header.header)
+	got.Write(rd.(table.Manner).Manner().(manner).header)
 	for {
 		rec, err := rd.Next()
 		if err == io.EOF {

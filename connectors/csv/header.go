@@ -10,6 +10,7 @@ import (
 	"github.com/apache/arrow/go/v16/arrow"
 
 	"labelweir/connectors/internal/cell"
+	"labelweir/connectors/internal/textrows"
 	"labelweir/connectors/table"
 )
 
@@ -26,42 +27,42 @@ type header struct {
 func readHeader(f table.File, opt table.ReadOptions) (*header, error) {
 	r := newRows(f, opt.Delimiter, opt.MostRow)
 	if f.Size > 0 {
-		if err := r.feed.More(); err != nil {
-			return nil, r.fault("can't be read", "", err)
+		if err := r.More(); err != nil {
+			return nil, err
 		}
 	}
-	text := r.feed.Window()
-	if what := foreign(text); what != "" {
-		return nil, r.fault(what, "convert it to CSV text in UTF-8 first", nil)
+	text := r.Feed.Window()
+	if what, do := foreign(text); what != "" {
+		return nil, r.Fault(what, do, nil)
 	}
 	mark := 0
-	if bytes.HasPrefix(text, []byte(byteOrderMark)) {
-		mark = len(byteOrderMark)
-		r.feed.Skip(mark)
+	if bytes.HasPrefix(text, []byte(textrows.ByteOrderMark)) {
+		mark = len(textrows.ByteOrderMark)
+		r.Feed.Skip(mark)
 	}
 	if r.delimiter == 0 {
-		r.delimiter = sniff(text[mark:], r.feed.Ended())
+		r.delimiter = sniff(text[mark:], r.Feed.Ended())
 	}
 	h := &header{manner: manner{delimiter: r.delimiter}}
 	if err := h.first(r); err != nil {
 		return nil, err
 	}
-	h.manner.header = append([]byte(byteOrderMark)[:mark], h.manner.header...)
+	h.manner.header = append([]byte(textrows.ByteOrderMark)[:mark], h.manner.header...)
 	return h, h.infer(r, opt)
 }
 
 // first takes the header's row.
 func (h *header) first(r *rows) error {
-	ok, err := r.next()
+	ok, err := r.Next()
 	switch {
 	case err != nil:
 		return err
 	case !ok:
-		return r.fault("has no rows, not even a header", "check the step that wrote it", nil)
-	case r.reason != "":
-		return r.fault("the header can't be read: "+r.reason, "write the names of the columns into the first row", nil)
+		return r.Fault("has no rows, not even a header", "check the step that wrote it", nil)
+	case r.Reason != "":
+		return r.Fault("the header can't be read: "+r.Reason, "write the names of the columns into the first row", nil)
 	case r.row.Count > mostColumns:
-		return r.fault(fmt.Sprintf("the header has %d cells, more than %d", r.row.Count, mostColumns), "check that "+quoted(r.delimiter)+" is its delimiter", nil)
+		return r.Fault(fmt.Sprintf("the header has %d cells, more than %d", r.row.Count, mostColumns), "check that "+quoted(r.delimiter)+" is its delimiter", nil)
 	}
 	for i := range r.row.Cells {
 		name := r.cell(i)
@@ -69,16 +70,16 @@ func (h *header) first(r *rows) error {
 			name = undouble(nil, name)
 		}
 		if !utf8.Valid(name) {
-			return r.fault(fmt.Sprintf("the name of column %d is not UTF-8 text", i+1), "convert the file to UTF-8", nil)
+			return r.Fault(fmt.Sprintf("the name of column %d is not UTF-8 text", i+1), "convert the file to UTF-8", nil)
 		}
 		h.names = append(h.names, string(name))
 	}
-	h.header = bytes.Clone(r.text[:r.row.Text])
+	h.header = bytes.Clone(r.Row)
 	h.newline = "\n"
-	if bytes.HasSuffix(r.text, []byte("\r\n")) {
+	if bytes.HasSuffix(r.whole, []byte("\r\n")) {
 		h.newline = "\r\n"
 	}
-	h.end, h.line, r.columns = r.at+int64(r.row.Next), r.beyond, r.row.Count
+	h.end, h.line, r.columns = r.At+int64(r.Skip), r.Beyond, r.row.Count
 	return nil
 }
 
@@ -115,17 +116,17 @@ func (h *header) peek(r *rows, most int) ([]guess, error) {
 	guesses := make([]guess, len(h.names))
 	var first error
 	read := 0
-	for read < most && r.feed.Offset() < h.end+peekBytes {
-		ok, err := r.next()
+	for read < most && r.Feed.Offset() < h.end+peekBytes {
+		ok, err := r.Next()
 		if err != nil {
 			return nil, err
 		}
 		if !ok {
 			break
 		}
-		if r.reason != "" {
+		if r.Reason != "" {
 			if first == nil {
-				first = r.fault("no row behind the header can be read; this one "+r.reason, "check that "+quoted(r.delimiter)+" is the delimiter", nil)
+				first = r.Fault("no row behind the header can be read; this one "+r.Reason, "check that "+quoted(r.delimiter)+" is the delimiter", nil)
 			}
 			continue
 		}

@@ -125,7 +125,7 @@ func TestFilesThatAreNoCSV(t *testing.T) {
 	for _, c := range []struct{ text, want string }{
 		{"", "apples.csv: line 1: has no rows, not even a header; check the step that wrote it"},
 		{"\n\n", "apples.csv: line 3: has no rows, not even a header; check the step that wrote it"},
-		{"\xff\xfea\x00", "apples.csv: is UTF-16 text, not UTF-8; convert it to CSV text in UTF-8 first"},
+		{"\xff\xfea\x00", "apples.csv: is UTF-16 text, not UTF-8; convert it to UTF-8 first"},
 		{"a,\x00\n", "apples.csv: has zero bytes, so it is no text; convert it to CSV text in UTF-8 first"},
 		{"a,\"b\n", "apples.csv: line 1: the header can't be read: cell 2 opens a quote that is never closed; write the names of the columns into the first row"},
 		{"a,b,c\n1;2\n3;4\n", `apples.csv: line 2: no row behind the header can be read; this one has 1 cell, the header has 3; check that "," is the delimiter`},

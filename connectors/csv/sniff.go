@@ -5,6 +5,7 @@ import (
 	"strings"
 
 	"labelweir/connectors/csv/internal/cut"
+	"labelweir/connectors/internal/textrows"
 )
 
 // sniffRows is how many of the first rows tell the delimiter.
@@ -42,22 +43,12 @@ func fit(text []byte, delimiter byte, end bool) (share float64, cells int) {
 	return float64(same) / float64(max(rows, 1)), cells
 }
 
-// byteOrderMark may stand before the header.
-const byteOrderMark = "\xef\xbb\xbf"
-
-// foreign tells from the first bytes what can't be CSV text in UTF-8; "" when nothing speaks against it.
-func foreign(text []byte) string {
-	switch {
-	case bytes.HasPrefix(text, []byte("\xff\xfe")), bytes.HasPrefix(text, []byte("\xfe\xff")):
-		return "is UTF-16 text, not UTF-8"
-	case bytes.HasPrefix(text, []byte("\x1f\x8b")):
-		return "is compressed by gzip"
-	case bytes.HasPrefix(text, []byte("PK\x03\x04")):
-		return "is a zip archive or a spreadsheet"
-	case bytes.IndexByte(text[:min(len(text), 1024)], 0) >= 0:
-		return "has zero bytes, so it is no text"
+// foreign tells from the first bytes what can't be CSV text in UTF-8, and what to do; "" when nothing speaks against it.
+func foreign(text []byte) (what, do string) {
+	if what, do = textrows.Foreign(text); what == "" && bytes.IndexByte(text[:min(len(text), 1024)], 0) >= 0 {
+		return "has zero bytes, so it is no text", "convert it to CSV text in UTF-8 first"
 	}
-	return ""
+	return what, do
 }
 
 // quoted puts a delimiter into words.

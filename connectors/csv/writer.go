@@ -8,187 +8,122 @@ import (
 	"github.com/apache/arrow/go/v16/arrow/array"
 
 	"labelweir/connectors/internal/spell"
+	"labelweir/connectors/internal/textrows"
 	"labelweir/connectors/table"
 )
 
-// writer implements table.Writer.
-type writer struct {
-	w      io.Writer
-	manner manner
-	schema *arrow.Schema
-	raw    int // index of the hidden column, −1 when there is none
-	need   [256]bool
-
+// composer puts rows of cells together; it implements textrows.Composer.
+type composer struct {
+	manner  manner
+	raw     int  // index of the hidden column, −1 when there is none
 	respell bool // write rows out of their cells, also when their bytes are there
-
-	spellers []spell.Speller // one a column, for the record batch at hand
-	buf      []byte
-	err      error // sticky
+	need    [256]bool
 }
-
-// flushBytes is how many bytes are collected before they are written.
-const flushBytes = 256 << 10
 
 func create(w io.Writer, schema *arrow.Schema, opt table.WriteOptions) (table.Writer, error) {
-	out := &writer{w: w, schema: schema, raw: table.RawIndex(schema), manner: manner{delimiter: ',', newline: "\n"}}
+	c := &composer{raw: table.RawIndex(schema), manner: manner{delimiter: ',', newline: "\n"}}
 	if m, ok := opt.Manner.(manner); ok {
-		out.manner = m
+		c.manner = m
 	}
-	if isTabbed(opt.Name) && out.manner.delimiter != '\t' { // the rows' own bytes are of no use then
-		out.manner = manner{delimiter: '\t', newline: out.manner.newline}
-		out.respell = true
+	if isTabbed(opt.Name) && c.manner.delimiter != '\t' {
+		c.manner = manner{delimiter: '\t', newline: c.manner.newline}
+		c.respell = true
 	}
-	for _, c := range []byte{out.manner.delimiter, '"', '\n', '\r'} {
-		out.need[c] = true
+	for _, b := range []byte{c.manner.delimiter, '"', '\n', '\r'} {
+		c.need[b] = true
 	}
-	out.writeHeader()
-	return out, nil
+	return textrows.NewWriter(w, c, schema, c.header(schema)), nil
 }
 
-// writeHeader takes the input's own header where it stands for the columns before the hidden one.
-func (w *writer) writeHeader() {
+// header is the first row: the input's own, where it stands for the columns before the hidden one, and the other names.
+func (c *composer) header(schema *arrow.Schema) (row []byte) {
 	from := 0
-	if w.raw >= 0 && len(w.manner.header) > 0 {
-		w.buf, from = append(w.buf, w.manner.header...), w.raw+1
+	if c.raw >= 0 && len(c.manner.header) > 0 {
+		row, from = append(row, c.manner.header...), c.raw+1
 	}
-	for i, f := range w.schema.Fields()[from:] {
-		if i += from; i != w.raw {
-			w.separate(i)
-			lo := len(w.buf)
-			w.buf = append(w.buf, f.Name...)
-			w.quote(lo)
+	for i, f := range schema.Fields()[from:] {
+		if i += from; i != c.raw {
+			row = c.separate(row, i)
+			lo := len(row)
+			row = c.quote(append(row, f.Name...), lo)
 		}
 	}
-	w.buf = append(w.buf, w.manner.newline...)
+	return append(row, c.manner.newline...)
 }
 
-// Write implements table.Writer.
-func (w *writer) Write(rec arrow.Record) error {
-	if w.err != nil {
-		return w.err
+// Speller implements textrows.Composer. Cells of a CSV file that are no UTF-8 are written as they came.
+func (c *composer) Speller(i int, arr arrow.Array) (spell.Speller, error) {
+	if b, ok := arr.(*array.Binary); ok && i < c.raw {
+		return func(dst []byte, i int) ([]byte, bool) { return append(dst, b.Value(i)...), b.IsNull(i) }, nil
 	}
-	if w.err = w.prepare(rec); w.err != nil {
-		return w.err
-	}
-	var raws *array.Binary
-	if w.raw >= 0 && !w.respell {
-		raws = rec.Column(w.raw).(*array.Binary)
-	}
-	for i := range int(rec.NumRows()) {
-		w.row(raws, i)
-		if len(w.buf) >= flushBytes {
-			if w.err = w.flush(); w.err != nil {
-				return w.err
-			}
-		}
-	}
-	return nil
+	return spell.Plain(arr)
 }
 
-// prepare makes the spellers of a record batch.
-func (w *writer) prepare(rec arrow.Record) (err error) {
-	w.spellers = append(w.spellers[:0], make([]spell.Speller, rec.NumCols())...)
-	for i, arr := range rec.Columns() {
-		if i == w.raw {
-			continue
-		}
-		if b, ok := arr.(*array.Binary); ok && i < w.raw {
-			w.spellers[i] = bytesOf(b)
-		} else if w.spellers[i], err = spell.Plain(arr); err != nil {
-			return err
-		}
-	}
-	return nil
-}
-
-// bytesOf spells cells of a CSV file that are no UTF-8 as they came.
-func bytesOf(a *array.Binary) spell.Speller {
-	return func(dst []byte, i int) ([]byte, bool) { return append(dst, a.Value(i)...), a.IsNull(i) }
-}
-
-// row appends row i: its bytes as they came and the cells behind the hidden column, or all of its cells.
-func (w *writer) row(raws *array.Binary, i int) {
-	newline, from := w.manner.newline, 0
-	if raws != nil && raws.IsValid(i) {
-		b := raws.Value(i)
-		if text := bytes.TrimSuffix(b, []byte("\n")); len(text) < len(b) { // a line's end of its own
+// AppendRow implements textrows.Composer: the row's bytes as they came and the cells behind the hidden column, or all of
+// its cells.
+func (c *composer) AppendRow(dst, kept []byte, spellers []spell.Speller, i int) []byte {
+	newline, from := c.manner.newline, 0
+	if kept != nil && !c.respell {
+		if text := bytes.TrimSuffix(kept, []byte("\n")); len(text) < len(kept) { // a line's end of its own
 			text = bytes.TrimSuffix(text, []byte("\r"))
-			b, newline = text, string(b[len(text):])
+			kept, newline = text, string(kept[len(text):])
 		}
-		w.buf, from = append(w.buf, b...), w.raw+1
+		dst, from = append(dst, kept...), c.raw+1
 	}
-	for k := from; k < len(w.spellers); k++ {
-		if k == w.raw {
+	for k := from; k < len(spellers); k++ {
+		if k == c.raw {
 			continue
 		}
-		w.separate(k)
-		lo := len(w.buf)
+		dst = c.separate(dst, k)
+		lo := len(dst)
 		var null bool
-		if w.buf, null = w.spellers[k](w.buf, i); !null || len(w.spellers) == 1 { // a blank line would be no row
-			w.quote(lo)
+		if dst, null = spellers[k](dst, i); !null || len(spellers) == 1 { // a blank line would be no row
+			dst = c.quote(dst, lo)
 		}
 	}
-	w.buf = append(w.buf, newline...)
+	return append(dst, newline...)
 }
 
 // separate appends the delimiter in front of column i.
-func (w *writer) separate(i int) {
+func (c *composer) separate(dst []byte, i int) []byte {
 	if i > 0 {
-		w.buf = append(w.buf, w.manner.delimiter)
+		dst = append(dst, c.manner.delimiter)
 	}
+	return dst
 }
 
-// quote puts the cell at the buffer's end, from lo on, into quotes when it needs them: when it is empty, which without
-// them means null, and when it holds a delimiter, a quote or a line's end.
-func (w *writer) quote(lo int) {
-	cell := w.buf[lo:]
+// quote puts the cell at the end of dst, from lo on, into quotes when it needs them: when it is empty, which without them
+// means null, and when it holds a delimiter, a quote or a line's end.
+func (c *composer) quote(dst []byte, lo int) []byte {
+	cell := dst[lo:]
 	if len(cell) == 0 {
-		w.buf = append(w.buf, `""`...)
-		return
+		return append(dst, `""`...)
 	}
-	if !w.needsQuotes(cell) {
-		return
+	if !c.needsQuotes(cell) {
+		return dst
 	}
 	more := 2 + bytes.Count(cell, []byte{'"'})
 	for range more {
-		w.buf = append(w.buf, '"')
+		dst = append(dst, '"')
 	}
-	to := len(w.buf) - 1 // the closing quote stands there
+	to := len(dst) - 1 // the closing quote stands there
 	for from := to - more; from >= lo; from-- {
 		to--
-		w.buf[to] = w.buf[from]
-		if w.buf[from] == '"' {
+		dst[to] = dst[from]
+		if dst[from] == '"' {
 			to--
-			w.buf[to] = '"'
+			dst[to] = '"'
 		}
 	}
-	w.buf[lo] = '"'
+	dst[lo] = '"'
+	return dst
 }
 
-func (w *writer) needsQuotes(cell []byte) bool {
-	for _, c := range cell {
-		if w.need[c] {
+func (c *composer) needsQuotes(cell []byte) bool {
+	for _, b := range cell {
+		if c.need[b] {
 			return true
 		}
 	}
 	return false
 }
-
-func (w *writer) flush() error {
-	_, err := w.w.Write(w.buf)
-	if w.buf = w.buf[:0]; cap(w.buf) > 16*flushBytes { // after a very long row
-		w.buf = nil
-	}
-	return err
-}
-
-// Close implements table.Writer.
-func (w *writer) Close() error {
-	if w.err != nil {
-		return w.err
-	}
-	w.err = w.flush()
-	return w.err
-}
-
-var _ table.Writer = (*writer)(nil)

@@ -10,6 +10,7 @@ import (
 	"github.com/apache/arrow/go/v16/arrow/array"
 	"github.com/apache/arrow/go/v16/arrow/memory"
 
+	"labelweir/connectors/internal/textrows"
 	"labelweir/connectors/table"
 )
 
@@ -134,7 +135,7 @@ var errFull = errors.New("no space left")
 
 func TestAFullDiskIsAnError(t *testing.T) {
 	text := "a,b\n" + strings.Repeat("1,abcdefghij\n", 60_000)
-	for _, room := range []full{0, flushBytes + 1} {
+	for _, room := range []full{0, textrows.FlushBytes + 1} {
 		rd := must(open(file(text), options(t)))
 		w := must(create(&room, rd.Schema(), table.WriteOptions{Memory: memory.DefaultAllocator}))
 		var err error

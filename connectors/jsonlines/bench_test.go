@@ -12,6 +12,7 @@ import (
 	"github.com/apache/arrow/go/v16/arrow"
 	"github.com/apache/arrow/go/v16/arrow/memory"
 
+	"labelweir/connectors/internal/textrows"
 	"labelweir/connectors/table"
 )
 
@@ -69,8 +70,8 @@ func BenchmarkEncodingJSONCopy(b *testing.B) {
 	b.SetBytes(f.Size)
 	b.ReportAllocs()
 	for b.Loop() {
-		d := json.NewDecoder(bufio.NewReaderSize(io.NewSectionReader(f, 0, f.Size), flushBytes))
-		e := json.NewEncoder(bufio.NewWriterSize(io.Discard, flushBytes))
+		d := json.NewDecoder(bufio.NewReaderSize(io.NewSectionReader(f, 0, f.Size), textrows.FlushBytes))
+		e := json.NewEncoder(bufio.NewWriterSize(io.Discard, textrows.FlushBytes))
 		for {
 			var row map[string]any
 			err := d.Decode(&row)
@@ -94,8 +95,8 @@ func BenchmarkEncodingJSONRawCopy(b *testing.B) {
 	b.SetBytes(f.Size)
 	b.ReportAllocs()
 	for b.Loop() {
-		d := json.NewDecoder(bufio.NewReaderSize(io.NewSectionReader(f, 0, f.Size), flushBytes))
-		e := json.NewEncoder(bufio.NewWriterSize(io.Discard, flushBytes))
+		d := json.NewDecoder(bufio.NewReaderSize(io.NewSectionReader(f, 0, f.Size), textrows.FlushBytes))
+		e := json.NewEncoder(bufio.NewWriterSize(io.Discard, textrows.FlushBytes))
 		for {
 			var row map[string]json.RawMessage
 			err := d.Decode(&row)

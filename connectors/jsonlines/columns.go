@@ -55,42 +55,42 @@ func infer(l *lines, peek int) (*columns, error) {
 	var name []byte
 	var scratch []float64
 	first, read := "", 0
-	for start := l.feed.Offset(); read < peek && l.feed.Offset() < start+peekBytes; {
-		ok, err := l.next()
+	for start := l.Feed.Offset(); read < peek && l.Feed.Offset() < start+peekBytes; {
+		ok, err := l.Next()
 		if err != nil {
 			return nil, err
 		}
 		if !ok {
 			break
 		}
-		if l.reason != "" {
+		if l.Reason != "" {
 			if first == "" {
-				first = "the first line can't be read: " + l.reason
+				first = "the first line can't be read: " + l.Reason
 			}
 			continue
 		}
 		read++
 		for _, m := range l.scan.Members {
 			var key []byte
-			key, name = textOf(l.text, m.Key, name)
+			key, name = textOf(l.Row, m.Key, name)
 			i, known := c.index[string(key)]
 			if !known {
 				i = len(c.names)
 				c.add(string(key), nil)
 				habits = append(habits, habit{})
 			}
-			habits[i].watch(l.text, m, &scratch)
+			habits[i].watch(l.Row, m, &scratch)
 		}
 		if len(c.names) > limits().Members {
-			return nil, l.fault("has too many different members in its first objects", "check that they are records of one kind", nil)
+			return nil, l.Fault("has too many different members in its first objects", "check that they are records of one kind", nil)
 		}
 	}
 	switch {
 	case read > 0:
 	case first != "":
-		return nil, table.At(table.Place{Path: l.path}, table.ErrUnreadable, first, "write one JSON object on each line (jq -c '.[]' makes lines of an array)", nil)
+		return nil, table.At(table.Place{Path: l.Path}, table.ErrUnreadable, first, "write one JSON object on each line (jq -c '.[]' makes lines of an array)", nil)
 	default:
-		return nil, table.At(table.Place{Path: l.path}, table.ErrUnreadable, "has no lines", "check the step that wrote it", nil)
+		return nil, table.At(table.Place{Path: l.Path}, table.ErrUnreadable, "has no lines", "check the step that wrote it", nil)
 	}
 	room := mostNumbers
 	for i := range habits {

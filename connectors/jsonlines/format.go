@@ -9,11 +9,7 @@ func Format() table.Format {
 	return table.Format{Name: formatName, Title: "JSON lines", Endings: []string{".jsonl", ".ndjson", ".json"}, Pipe: true, Open: open, Create: create}
 }
 
-func open(f table.File, opt table.ReadOptions) (table.Reader, error) { return newReader(f, opt) }
-
 // manner is how a file is written beyond its lines.
 type manner struct {
 	mark string // the byte order mark before the first line, if there is one
 }
-
-const byteOrderMark = "\xef\xbb\xbf"

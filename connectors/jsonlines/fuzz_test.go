@@ -12,6 +12,7 @@ import (
 	"github.com/apache/arrow/go/v16/arrow/array"
 	"github.com/apache/arrow/go/v16/arrow/memory"
 
+	"labelweir/connectors/internal/textrows"
 	"labelweir/connectors/table"
 )
 
@@ -54,7 +55,7 @@ func nothingLost(t *testing.T, b []byte, mostRow int) {
 			t.Fatalf("%q: wrote %q", b, line)
 		}
 	}
-	if !long && blankless(got.Bytes()) != blankless(bytes.TrimPrefix(b, []byte(byteOrderMark))) {
+	if !long && blankless(got.Bytes()) != blankless(bytes.TrimPrefix(b, []byte(textrows.ByteOrderMark))) {
 		t.Fatalf("%q: got %q", b, got.Bytes())
 	}
 }

@@ -9,6 +9,7 @@ import (
 
 	"github.com/apache/arrow/go/v16/arrow"
 
+	"labelweir/connectors/internal/textrows"
 	"labelweir/connectors/table"
 )
 
@@ -190,7 +191,7 @@ func TestRecordBatchesOfManyValuesHaveFewRows(t *testing.T) {
 	}
 	rows := int64(0)
 	if err := each(t, rd, func(rec arrow.Record) {
-		if rows += rec.NumRows(); rec.NumRows()*rec.NumCols() > batchValues {
+		if rows += rec.NumRows(); rec.NumRows()*rec.NumCols() > textrows.BatchValues {
 			t.Fatalf("%d rows of %d columns", rec.NumRows(), rec.NumCols())
 		}
 		if rec.NumRows() > 4 {

@@ -10,6 +10,7 @@ import (
 	"github.com/apache/arrow/go/v16/arrow/array"
 	"github.com/apache/arrow/go/v16/arrow/memory"
 
+	"labelweir/connectors/internal/textrows"
 	"labelweir/connectors/table"
 )
 
@@ -81,7 +82,7 @@ var errFull = errors.New("no space left")
 
 func TestAFullDiskIsAnError(t *testing.T) {
 	text := strings.Repeat("{\"a\":1,\"b\":\"abcdefghij\"}\n", 30_000)
-	for _, room := range []full{0, flushBytes + 1} {
+	for _, room := range []full{0, textrows.FlushBytes + 1} {
 		rd := must(open(file(text), options(t)))
 		w := must(create(&room, rd.Schema(), table.WriteOptions{Memory: memory.DefaultAllocator}))
 		var err error
