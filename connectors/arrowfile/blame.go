@@ -2,6 +2,7 @@ package arrowfile
 
 import (
 	"encoding/binary"
+	"errors"
 	"sort"
 
 	"github.com/apache/arrow/go/v16/arrow"
@@ -11,10 +12,11 @@ import (
 	"labelweir/connectors/internal/capped"
 )
 
-// blame finds the column at which reading a record batch fails, for the message to name; empty when it can't be told.
+// blame finds the column at which reading a record batch fails, for the message to name; empty when it can't be told. A
+// fault of one buffer tells it. Otherwise the batch is read again with fewer and fewer columns.
 // Arrow reads columns in order, so that a batch without its columns from k on fails only when the faulty one is among the
 // first k. It costs some readings of the file up to that batch, of which all are thrown away.
-func (r *reader) blame() (column string) {
+func (r *reader) blame(err error) (column string) {
 	defer func() {
 		if recover() != nil { // the batch's head makes no sense: then no column does
 			column = ""
@@ -27,12 +29,31 @@ func (r *reader) blame() (column string) {
 	if r.msgs.recordAtFault() == nil {
 		return ""
 	}
+	if bad := (*bufferError)(nil); errors.As(err, &bad) {
+		return r.columnOfBuffer(bad.buffer)
+	}
+	if large := (*tooLarge)(nil); errors.As(err, &large) { // not to be read again
+		return r.columnOfBuffer(large.buffer)
+	}
 	n := schema.NumFields()
 	k := sort.Search(n+1, func(k int) bool { return r.failsWith(k) })
 	if k == 0 || k > n {
 		return ""
 	}
 	return schema.Field(k - 1).Name
+}
+
+// columnOfBuffer is the column that a buffer of the record batch being read belongs to.
+func (r *reader) columnOfBuffer(buffer int) string {
+	root := fbRoot(r.msgs.head)
+	rec, _ := root.table(2)
+	c := share{old: root.int16(0) < 4, views: rec.int64s(4)}
+	for i, f := range fieldsOf(r.msgs.schema) {
+		if c.count(f, false, 0); buffer < c.buffers {
+			return r.rd.Schema().Field(i).Name
+		}
+	}
+	return ""
 }
 
 // failsWith tells whether the record batch at fault can't be read even without its columns from k on.

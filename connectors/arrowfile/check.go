@@ -35,7 +35,7 @@ func (m *messages) check(root fbTable, body int64) error {
 		at := rec.b[pos+16*i:]
 		off, size := int64(binary.LittleEndian.Uint64(at)), int64(binary.LittleEndian.Uint64(at[8:]))
 		if off < 0 || size < 0 || off > body || size > body-off {
-			return fmt.Errorf("buffer %d stands at bytes %d+%d of a message of %d", i, off, size, body)
+			return badBuffer(i, "stands at bytes %d+%d of a message of %d", off, size, body)
 		}
 	}
 	return nil
@@ -65,21 +65,36 @@ func unpackable(root fbTable, body []byte, most int64) error {
 			continue
 		}
 		if size < 8 {
-			return fmt.Errorf("buffer %d of %d bytes is too short to be compressed", i, size)
+			return badBuffer(i, "of %d bytes is too short to be compressed", size)
 		}
 		full := int64(binary.LittleEndian.Uint64(body[off:]))
 		if full < -1 || full > 128<<10+ratio*(size-8) { // −1: it is not compressed after all
-			return fmt.Errorf("buffer %d of %d bytes can't unpack to %d", i, size, full)
+			return badBuffer(i, "of %d bytes can't unpack to %d", size, full)
 		}
 		if sum += max(full, size-8); most > 0 && sum > most {
-			return &tooLarge{sum, most}
+			return &tooLarge{i, sum, most}
 		}
 	}
 	return nil
 }
 
+// bufferError is a fault of one buffer.
+type bufferError struct {
+	buffer int
+	text   string
+}
+
+func badBuffer(i int, format string, args ...any) error {
+	return &bufferError{i, fmt.Sprintf(format, args...)}
+}
+
+func (e *bufferError) Error() string { return fmt.Sprintf("buffer %d %s", e.buffer, e.text) }
+
 // tooLarge is a message that takes more memory than it may.
-type tooLarge struct{ wanted, most int64 }
+type tooLarge struct {
+	buffer       int // at which that is sure
+	wanted, most int64
+}
 
 func (e *tooLarge) Error() string {
 	return fmt.Sprintf("it unpacks to %d MB or more, and %d may be", e.wanted>>20, e.most>>20)

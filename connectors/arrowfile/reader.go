@@ -80,7 +80,7 @@ func (r *reader) Next() (rec arrow.Record, err error) {
 	if !r.rd.Next() {
 		if err := r.rd.Err(); err != nil {
 			e := r.damaged("the record batch can't be read", err).(*table.Error)
-			e.Column = r.blame()
+			e.Column = r.blame(err)
 			if large := (*tooLarge)(nil); errors.As(err, &large) {
 				e.Do = "the file is damaged, or wants smaller record batches or a higher limit of memory"
 			}
