@@ -40,9 +40,9 @@ func newFitting(in *intake, o Options, last *fitting) *fitting {
 		n *= 2
 	}
 	for i := range n {
-		f.folds = append(f.folds, &learn.Fold{Number: i})
+		f.folds = append(f.folds, &learn.Fold{Number: i, Once: o.Once})
 	}
-	f.folds = append(f.folds, &learn.Fold{Number: wholeFold})
+	f.folds = append(f.folds, &learn.Fold{Number: wholeFold, Once: o.Once})
 	return f
 }
 
@@ -95,6 +95,7 @@ func (f *fitting) grow(ctx context.Context, stage uint64) error {
 				}
 			}
 		}
+		fold.Voted(fold.Number == wholeFold)
 	})
 }
 
@@ -148,6 +149,9 @@ func (f *fitting) members() [][]float64 {
 	}
 	return out
 }
+
+// swiftRows is from how many rows on two epochs bring the weights close enough to their optimum for the flags to be renewed.
+const swiftRows = 8000
 
 // warm refits the plan of the last training.
 func (f *fitting) warm(ctx context.Context, stage uint64, last *noise.Layer) (*noise.Layer, *noise.Facts, error) {

@@ -25,6 +25,7 @@ func (f *fitting) cold(ctx context.Context) (*noise.Layer, *noise.Facts, error) 
 				f.solve(fold, i, lambda, learn.Qs[:], none, rng, s)
 			}
 		}
+		fold.Solved()
 	})
 	if err != nil {
 		return nil, nil, err
@@ -41,6 +42,7 @@ func (f *fitting) cold(ctx context.Context) (*noise.Layer, *noise.Facts, error) 
 		for _, set := range first {
 			f.solve(fold, set.Design, set.Lambda, learn.Qs[:], none, rng, s)
 		}
+		fold.Solved()
 	})
 	if err != nil {
 		return nil, nil, err
@@ -153,6 +155,3 @@ func (f *fitting) whole(ctx context.Context) error {
 		}
 	})
 }
-
-// swiftRows is from how many rows on two epochs bring the weights close enough to their optimum for the flags to be renewed.
-const swiftRows = 8000
