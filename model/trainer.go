@@ -17,6 +17,7 @@ type Options struct {
 	Seed      uint64  // of every random draw; default 1
 	Precision float64 // share of truly wrong labels wanted among held-back rows, in (0.5, 1); default 0.95
 	Workers   int     // goroutines; the result does not depend on it; default the number of cores
+	Once      bool    // no fit follows that could start from this one: the same result in about half the memory; default false
 
 	// Progress, if set, is told what is being done now: a phase's name and how far it is. It is called from one
 	// goroutine at a time.
@@ -95,8 +96,11 @@ func (tr *Trainer) Fit(ctx context.Context, t *Table) (*Result, error) {
 		tr.last = nil // folds may be half done
 		return nil, err
 	}
-	tr.last, tr.layer = f, layer
 	tr.stage++
+	if tr.opt.Once {
+		return f.result(t, layer, facts, warm), nil
+	}
+	tr.last, tr.layer = f, layer
 	tr.warm++
 	if !warm {
 		tr.warm, tr.rows = 0, len(in.rows)

@@ -9,7 +9,8 @@ import (
 
 // Fold is one scorer in the making and what its next fit can start from. It belongs to one goroutine at a time.
 type Fold struct {
-	Number int // rows of this fold are held out; a number no row has: none is
+	Number int  // rows of this fold are held out; a number no row has: none is
+	Once   bool // no warm fit follows: Voted and Solved free what only that would need
 
 	trees  [Forests][]*forest.Tree
 	next   int                     // tree to be regrown first

@@ -69,7 +69,9 @@ func (f *Fold) Solve(d *Data, design int, lambda float64, qs []float64, o chain.
 			take(j, Pair{A: ab[0], B: ab[1], W: states[j].W})
 			states[j].W = nil // a warm run builds its own
 		}
-		f.runs[r] = keep(p, qs, states)
+		if !f.Once {
+			f.runs[r] = keep(p, qs, states)
+		}
 	}
 	return tally
 }
