@@ -95,6 +95,7 @@ func (s *Sweep) run(ctx context.Context) (*Report, error) {
 func (s *Sweep) trainer(watch *stopwatch) Learner {
 	o := model.DefaultOptions()
 	o.Seed, o.Precision, o.Workers = s.Config.Seed, s.Config.Precision, s.Config.Workers
+	o.Once = !s.Config.Sliding
 	o.Progress = func(phase string, done, total int) {
 		watch.enter("fit/" + phase)
 		if s.Progress != nil {
