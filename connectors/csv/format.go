@@ -10,7 +10,7 @@ const formatName = "csv"
 
 // Format describes the format. Nothing at a file's beginning tells it, so it goes by the name.
 func Format() table.Format {
-	return table.Format{Name: formatName, Title: "CSV", Endings: []string{".csv", tabbed}, Pipe: true, Open: open, Create: create}
+	return table.Format{Name: formatName, Title: "CSV", Endings: []string{".csv", tabbed}, Pipe: true, Rows: true, Open: open, Create: create}
 }
 
 // tabbed is the ending of a name that promises tabs between the cells.

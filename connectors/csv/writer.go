@@ -59,16 +59,32 @@ func (c *composer) Speller(i int, arr arrow.Array) (spell.Speller, error) {
 	return spell.Plain(arr)
 }
 
-// AppendRow implements textrows.Composer: the row's bytes as they came and the cells behind the hidden column, or all of
-// its cells.
-func (c *composer) AppendRow(dst, kept []byte, spellers []spell.Speller, i int) []byte {
+// Head implements textrows.Composer: all but a line's end of the row's own.
+func (c *composer) Head(kept []byte) int {
+	if c.respell {
+		return 0
+	}
+	return len(kept) - len(lineEnd(kept))
+}
+
+// lineEnd is the LF or CR LF that a row ends with.
+func lineEnd(row []byte) []byte {
+	text, ends := bytes.CutSuffix(row, []byte("\n"))
+	if !ends {
+		return nil
+	}
+	return row[len(bytes.TrimSuffix(text, []byte("\r"))):]
+}
+
+// AppendRest implements textrows.Composer: the cells behind the hidden column, or all of them when the row has no bytes of
+// its own.
+func (c *composer) AppendRest(dst, kept []byte, head int, spellers []spell.Speller, i int) []byte {
 	newline, from := c.manner.newline, 0
 	if kept != nil && !c.respell {
-		if text := bytes.TrimSuffix(kept, []byte("\n")); len(text) < len(kept) { // a line's end of its own
-			text = bytes.TrimSuffix(text, []byte("\r"))
-			kept, newline = text, string(kept[len(text):])
+		from = c.raw + 1
+		if head < len(kept) {
+			newline = string(kept[head:])
 		}
-		dst, from = append(dst, kept...), c.raw+1
 	}
 	for k := from; k < len(spellers); k++ {
 		if k == c.raw {

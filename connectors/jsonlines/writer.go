@@ -50,16 +50,16 @@ func uniqueNames(schema *arrow.Schema) []string {
 // Speller implements textrows.Composer.
 func (c *composer) Speller(_ int, arr arrow.Array) (spell.Speller, error) { return spell.JSON(arr) }
 
-// AppendRow implements textrows.Composer: the line as it came, with the members behind the hidden column before its
-// closing brace, or an object of all columns.
-func (c *composer) AppendRow(dst, kept []byte, spellers []spell.Speller, i int) []byte {
+// Head implements textrows.Composer: all before the closing brace.
+func (c *composer) Head(kept []byte) int { return bytes.LastIndexByte(kept, '}') }
+
+// AppendRest implements textrows.Composer: the members behind the hidden column and the line's closing brace, or an object
+// of all columns.
+func (c *composer) AppendRest(dst, kept []byte, head int, spellers []spell.Speller, i int) []byte {
 	end, from, empty := []byte("}"), 0, true
 	if kept != nil {
-		brace := bytes.LastIndexByte(kept, '}')
-		dst, end = append(dst, kept[:brace]...), kept[brace:]
-		inside := bytes.TrimRight(kept[:brace], " \t\r")
-		empty = inside[len(inside)-1] == '{'
-		from = c.raw + 1
+		inside := bytes.TrimRight(kept[:head], " \t\r")
+		end, from, empty = kept[head:], c.raw+1, inside[len(inside)-1] == '{'
 	} else {
 		dst = append(dst, '{')
 	}

@@ -57,6 +57,17 @@ func newConversion(src *Source, to *Format) (*conversion, error) {
 	return c, nil
 }
 
+// bare is rec without the hidden column, if it has one: the last. The caller releases it.
+func (c *conversion) bare(rec arrow.Record) arrow.Record {
+	cols := rec.Columns()
+	raw := RawIndex(rec.Schema())
+	if raw != len(cols)-1 {
+		rec.Retain()
+		return rec
+	}
+	return array.NewRecord(arrow.NewSchema(rec.Schema().Fields()[:raw], nil), cols[:raw], rec.NumRows())
+}
+
 // apply gives the columns of rows for the output; the caller releases them.
 func (c *conversion) apply(rec arrow.Record, mem memory.Allocator) []arrow.Array {
 	cols := make([]arrow.Array, len(c.columns))

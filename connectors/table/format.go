@@ -109,6 +109,7 @@ type Format struct {
 	Endings []string // of file names that mean it, in small letters, with the dot; the first is the usual one
 	Magic   [][]byte // what a file of it can begin with; empty: nothing tells it
 	Pipe    bool     // it can be written without knowing its length
+	Rows    bool     // its files are rows one after the other: how they are cut into record batches does not show
 
 	Open   func(f File, opt ReadOptions) (Reader, error)
 	Create func(w io.Writer, schema *arrow.Schema, opt WriteOptions) (Writer, error)

@@ -12,6 +12,7 @@ import (
 
 // output is one file being written: rows gather in pieces until they make a record batch of Options.BlockRows rows,
 // fewer when these take more than Options.BlockBytes and at the end, so that it does not depend on how the input was cut.
+// Formats for which that makes no difference get the pieces as they come.
 type output struct {
 	target *Target
 	format *Format
@@ -83,8 +84,19 @@ func (o *output) add(rec arrow.Record, runs []run, tags []filter.Tag) error {
 	return o.addPiece(piece, kept)
 }
 
-// addPiece adds rows to the block, and writes it each time it is full.
+// addPiece writes rows, or adds them to the block, which it writes each time it is full.
 func (o *output) addPiece(piece arrow.Record, tags []filter.Tag) error {
+	if o.conv != nil {
+		piece = o.conv.bare(piece)
+		defer piece.Release()
+	}
+	if o.format.Rows {
+		o.tags.reserve(len(tags))
+		for i := range tags {
+			o.tags.add(&tags[i])
+		}
+		return o.write(piece)
+	}
 	if err := o.follow(piece); err != nil {
 		return err
 	}
@@ -147,13 +159,22 @@ func (o *output) flush() error {
 		return err
 	}
 	defer rec.Release()
+	if err := o.write(rec); err != nil {
+		return err
+	}
+	o.forget()
+	return nil
+}
+
+// write writes a record batch with the tags collected.
+func (o *output) write(rec arrow.Record) error {
 	own := o.tags.take() // the columns that are no longer needed when the record batch has them
 	cols := append([]arrow.Array(nil), rec.Columns()...)
 	if o.conv != nil {
 		cols = o.conv.apply(rec, o.opt.Memory)
 		own = append(own, cols...)
 	}
-	full := array.NewRecord(o.schema, append(cols, own[:len(TagNames())]...), o.rows)
+	full := array.NewRecord(o.schema, append(cols, own[:len(TagNames())]...), rec.NumRows())
 	defer full.Release()
 	for _, c := range own {
 		c.Release()
@@ -161,8 +182,7 @@ func (o *output) flush() error {
 	if err := o.wr.Write(full); err != nil {
 		return err
 	}
-	o.written += o.rows
-	o.forget()
+	o.written += rec.NumRows()
 	return nil
 }
 

@@ -64,13 +64,23 @@ func (t *Text) Take(dt arrow.DataType, mem memory.Allocator) arrow.Array {
 	}
 	t.offsets = append(t.offsets, int32(len(t.data)))
 	nulls := t.valid.nulls
-	arr := made(dt, n, nulls, nil, t.valid.buffer(mem), buffer(arrow.Int32Traits.CastToBytes(t.offsets), mem), buffer(t.data, mem))
-	t.offsets, t.data = t.offsets[:0], t.data[:0]
-	if cap(t.data) > mostKept {
-		t.data = nil
-	}
+	arr := made(dt, n, nulls, nil, t.valid.buffer(mem), buffer(arrow.Int32Traits.CastToBytes(t.offsets), mem), t.bytes(mem))
+	t.offsets = t.offsets[:0]
 	t.valid.clear()
 	return arr
+}
+
+// bytes gives the data away: a copy, so that the buffer can be used again, or the buffer itself when that is too large to
+// be kept and mostly full.
+func (t *Text) bytes(mem memory.Allocator) *memory.Buffer {
+	data := t.data
+	if t.data = data[:0]; cap(data) <= mostKept {
+		return buffer(data, mem)
+	}
+	if t.data = nil; len(data) < cap(data)/2 {
+		return buffer(data, mem)
+	}
+	return memory.NewBufferBytes(data)
 }
 
 // Vectors collects vectors of one size.

@@ -61,19 +61,24 @@ func (f *Feed) More() error {
 	return err
 }
 
-// makeRoom moves the window to the buffer's front. It doubles the buffer when that is more than half full, and takes a
-// small one again when a very long row is past.
+// Trim gives back the memory that a very long row took, once it is skipped.
+func (f *Feed) Trim() {
+	if have := f.hi - f.lo; len(f.buf) > 16*first && have < len(f.buf)/4 {
+		to := make([]byte, max(first, have))
+		copy(to, f.buf[f.lo:f.hi])
+		f.buf, f.lo, f.hi = to, 0, have
+	}
+}
+
+// makeRoom moves the window to the buffer's front. It doubles the buffer when that is more than half full.
 func (f *Feed) makeRoom() {
 	have := f.hi - f.lo
 	if len(f.buf) == 0 {
 		f.buf = make([]byte, min(int64(first), max(f.size, 1)))
 	}
 	to := f.buf
-	switch {
-	case have > len(f.buf)/2 && len(f.buf) < f.most:
+	if have > len(f.buf)/2 && len(f.buf) < f.most {
 		to = make([]byte, min(2*len(f.buf), f.most))
-	case len(f.buf) > 16*first && have < first/2:
-		to = make([]byte, first)
 	}
 	copy(to, f.buf[f.lo:f.hi])
 	f.buf, f.lo, f.hi = to, 0, have

@@ -90,8 +90,16 @@ func TestALongRowsRoomIsGivenBack(t *testing.T) {
 			t.Fatal(err)
 		}
 	}
+	f.Trim()
+	if len(f.buf) < 30*first {
+		t.Error("the row is no longer whole")
+	}
 	f.Skip(len(f.Window()) - 10)
 	at := f.Offset()
+	f.Trim()
+	if len(f.buf) != first || len(f.Window()) != 10 {
+		t.Errorf("a buffer of %d bytes with %d in it", len(f.buf), len(f.Window()))
+	}
 	if err := f.More(); err != nil {
 		t.Fatal(err)
 	}

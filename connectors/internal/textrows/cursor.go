@@ -48,6 +48,13 @@ func (c *Cursor) Step() error {
 	return nil
 }
 
+// rest skips the row, which must not be used any more, and gives back what memory it took beyond the usual.
+func (c *Cursor) rest() {
+	c.Feed.Skip(c.Skip)
+	c.Skip = 0
+	c.Feed.Trim()
+}
+
 // More makes the window longer. It gives feed.ErrTooLong when the row has more bytes than it may, else an error to be told.
 func (c *Cursor) More() error {
 	err := c.Feed.More()

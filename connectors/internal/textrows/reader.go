@@ -82,6 +82,7 @@ func (r *Reader) Next() (arrow.Record, error) {
 		r.err = err
 		return nil, err
 	}
+	r.table.Cursor.rest()
 	arrs := r.table.Rows.Columns()
 	rec := array.NewRecord(r.table.Schema, arrs, int64(n))
 	for _, a := range arrs {

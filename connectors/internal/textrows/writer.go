@@ -14,9 +14,11 @@ import (
 type Composer interface {
 	// Speller gives what writes the values of column i.
 	Speller(i int, arr arrow.Array) (spell.Speller, error)
-	// AppendRow appends row i, its line's end included. kept is what the hidden column has of it, nil for nothing; there
-	// is a speller for each column but the hidden one.
-	AppendRow(dst, kept []byte, spellers []spell.Speller, i int) []byte
+	// Head tells how many of a row's bytes, which the hidden column kept, are its beginning as it is to be written.
+	Head(kept []byte) int
+	// AppendRest appends what comes behind the head of row i, its line's end included. kept is nil when the hidden column
+	// has nothing of the row, and head 0; there is a speller for each column but the hidden one.
+	AppendRest(dst, kept []byte, head int, spellers []spell.Speller, i int) []byte
 }
 
 // FlushBytes is how many bytes are collected before they are written.
@@ -57,10 +59,15 @@ func (w *Writer) write(rec arrow.Record) (err error) {
 	}
 	for i := range int(rec.NumRows()) {
 		var kept []byte
+		head := 0
 		if raws != nil && raws.IsValid(i) {
 			kept = raws.Value(i)
+			head = w.composer.Head(kept)
+			if err := w.append(kept[:head]); err != nil {
+				return err
+			}
 		}
-		w.buf = w.composer.AppendRow(w.buf, kept, w.spellers, i)
+		w.buf = w.composer.AppendRest(w.buf, kept, head, w.spellers, i)
 		if len(w.buf) >= FlushBytes {
 			if err := w.flush(); err != nil {
 				return err
@@ -68,6 +75,19 @@ func (w *Writer) write(rec arrow.Record) (err error) {
 		}
 	}
 	return nil
+}
+
+// append takes the beginning of a row; a very long one is not copied but written at once.
+func (w *Writer) append(head []byte) error {
+	if len(head) < FlushBytes {
+		w.buf = append(w.buf, head...)
+		return nil
+	}
+	if err := w.flush(); err != nil {
+		return err
+	}
+	_, err := w.w.Write(head)
+	return err
 }
 
 func (w *Writer) flush() error {
