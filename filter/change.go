@@ -47,18 +47,22 @@ type change struct {
 	disagree, seen int // in the slice since the last retrain
 }
 
-// fitted takes over the normal share from a new snapshot: the upper end of what the window's out-of-sample
-// disagreement may be, two standard errors above its estimate.
-func (c *change) fitted(scores []model.Score) {
-	k, n := 0, 0
+// disagreement counts the rows with a score, and of them those whose label disagrees.
+func disagreement(scores []model.Score) (disagree, n int) {
 	for i := range scores {
 		if d, ok := disagrees(&scores[i]); ok {
 			n++
 			if d {
-				k++
+				disagree++
 			}
 		}
 	}
+	return disagree, n
+}
+
+// fitted takes over the normal share from a new snapshot, of whose window k rows of n disagreed with models that did not
+// see their labels: two standard errors above that.
+func (c *change) fitted(k, n int) {
 	p := (float64(k) + 1) / (float64(n) + 2)
 	c.normal = min(p+2*math.Sqrt(p*(1-p)/(float64(n)+2)), 0.65)
 	p0, p1 := c.normal+tolerated, c.normal+farMore

@@ -45,7 +45,7 @@ func TestFalseAlarmsAreRare(t *testing.T) {
 	}
 	for _, p := range []float64{0.01, 0.1, 0.4} {
 		c := change{}
-		c.fitted(scored(20_000, int(20_000*p)))
+		c.fitted(disagreement(scored(20_000, int(20_000*p))))
 		rng := rand.New(rand.NewPCG(1, 2))
 		if got := flow(&c, rng, 0, 4_000_000, c.normal+tolerated); len(got) > 24 {
 			t.Errorf("share %v: %d alarms", p, len(got))
@@ -61,7 +61,7 @@ func TestFalseAlarmsAreRare(t *testing.T) {
 func TestDelayIsWhatTheorySays(t *testing.T) {
 	const runs = 300
 	c := change{}
-	c.fitted(scored(20_000, 2_000))
+	c.fitted(disagreement(scored(20_000, 2_000)))
 	p0, p1 := c.normal+tolerated, c.normal+farMore
 	kl := p1*math.Log(p1/p0) + (1-p1)*math.Log((1-p1)/(1-p0))
 	want := changeLevel / kl
@@ -84,7 +84,7 @@ func TestOnsetIsNearTheChange(t *testing.T) {
 	far := 0
 	for seed := range uint64(200) {
 		c := change{}
-		c.fitted(scored(20_000, 1000))
+		c.fitted(disagreement(scored(20_000, 1000)))
 		rng := rand.New(rand.NewPCG(seed, 5))
 		flow(&c, rng, 0, 1000, 0.05)
 		for row := int64(1000); !c.open; row++ {
@@ -106,7 +106,7 @@ func TestOnsetIsNearTheChange(t *testing.T) {
 func TestChangeClosesAfterCooldown(t *testing.T) {
 	open := func() *change {
 		c := &change{cooldown: 3}
-		c.fitted(scored(1000, 50)) // up to 6.5 % is normal
+		c.fitted(disagreement(scored(1000, 50))) // up to 6.5 % is normal
 		flow(c, rand.New(rand.NewPCG(1, 1)), 0, 100, 0)
 		for row := int64(100); !c.open; row++ {
 			c.arrive(row, &model.Score{Margin: -1})
@@ -125,7 +125,7 @@ func TestChangeClosesAfterCooldown(t *testing.T) {
 		}
 		closed := c.slice(int64(oldest))
 		c.next()
-		c.fitted(scored(1000, window))
+		c.fitted(disagreement(scored(1000, window)))
 		return closed
 	}
 	t.Run("three normal slices in a row", func(t *testing.T) {
@@ -187,7 +187,7 @@ func TestChangeClosesAfterCooldown(t *testing.T) {
 
 func TestUnscoredRecordsDoNotMoveTheTest(t *testing.T) {
 	c := change{}
-	c.fitted(scored(1000, 50))
+	c.fitted(disagreement(scored(1000, 50)))
 	for row := range int64(10_000) {
 		if c.arrive(row, &model.Score{P: math.NaN(), Margin: math.NaN(), Reason: model.NewClass}) ||
 			c.arrive(row, &model.Score{Margin: math.NaN()}) {

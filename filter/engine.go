@@ -2,8 +2,6 @@ package filter
 
 import (
 	"context"
-	"errors"
-	"fmt"
 
 	"labelweir/model"
 	"labelweir/window"
@@ -18,6 +16,7 @@ type engine struct {
 	s       *Sweep
 	watch   *stopwatch
 	judges  *judges
+	rec     *recorder
 	out     *writeBehind
 	breaker *breaker
 	tally   *tally
@@ -31,8 +30,9 @@ type engine struct {
 	released []model.Score // scratch: scores of the rows that are decided
 }
 
-func newEngine(ctx context.Context, s *Sweep, watch *stopwatch, total int64) *engine {
-	return &engine{s: s, watch: watch, judges: startJudges(s.Config.Workers), out: startWriting(ctx, s.Sink, watch),
+// newEngine makes one for an input of total rows, −1: not known, which one window holds whole or that slides along.
+func newEngine(ctx context.Context, s *Sweep, watch *stopwatch, r *recorder, total int64) *engine {
+	return &engine{s: s, watch: watch, rec: r, judges: startJudges(s.Config.Workers), out: startWriting(ctx, s.Sink, watch),
 		breaker: newBreaker(s.Config, total), tally: newTally()}
 }
 
@@ -63,7 +63,7 @@ func (e *engine) watchArrival(upto int64) error {
 	b := e.pending[len(e.pending)-1].batch
 	start := e.watch.now()
 	defer e.watch.add("score", start)
-	return e.judges.score(e.fit, b.Table, b.First, int(e.read-b.First), int(upto-b.First), e.arrival)
+	return e.rec.score(streamArrivals, e.judges, e.fit, b.Table, b.First, int(e.read-b.First), int(upto-b.First), e.arrival)
 }
 
 // judge has the rows from e.first to upto judged by the newest fit, whichever batches they are in.
@@ -81,7 +81,7 @@ func (e *engine) judge(upto int64) error {
 			continue
 		}
 		dst := e.released[lo-e.first : hi-e.first]
-		if err := e.judges.score(e.fit, b.Table, b.First, int(lo-b.First), int(hi-b.First), dst); err != nil {
+		if err := e.rec.score(streamDecided, e.judges, e.fit, b.Table, b.First, int(lo-b.First), int(hi-b.First), dst); err != nil {
 			return err
 		}
 	}
@@ -147,27 +147,24 @@ func (e *engine) handOn() error {
 	return nil
 }
 
-// train fits the learner to the view and takes the fit over. It tells whether there is a new one; when the rows are not
+// train trains on the view and takes the fit over. It tells whether there is a new one; when the rows are not
 // enough there is none, the reason is noted, and the one before stays.
-func (e *engine) train(ctx context.Context, l Learner, v *window.View) (bool, error) {
+func (e *engine) train(ctx context.Context, v *window.View) (bool, error) {
 	e.watch.enter("fit")
-	fit, err := l.Fit(ctx, v.Table)
+	fit, err := e.rec.train(ctx, v, e.read)
 	e.watch.enter("")
-	if errors.Is(err, model.ErrTooFew) || errors.Is(err, model.ErrOneClass) {
-		e.tally.failed(e.read, err)
+	if little, ok := err.(*tooLittle); ok {
+		e.tally.failed(e.read, little)
 		return false, nil
 	}
 	if err != nil {
 		return false, err
 	}
-	if len(fit.Scores) != len(v.Rows) {
-		return false, fmt.Errorf("filter: %d scores for %d rows of the window", len(fit.Scores), len(v.Rows))
-	}
-	e.fit = &trained{snapshot: fit.Snapshot, id: fit.Snapshot.ID(), facts: fit.Snapshot.Facts(), view: v, scores: fit.Scores}
+	e.fit = fit
 	e.tally.fitted(e.fit)
-	e.breaker.change.fitted(fit.Scores)
-	if e.s.OnSnapshot != nil {
-		e.s.OnSnapshot(fit.Snapshot)
+	e.breaker.change.fitted(fit.disagree, fit.scored)
+	if e.s.OnSnapshot != nil && fit.snapshot != nil {
+		e.s.OnSnapshot(fit.snapshot)
 	}
 	return true, nil
 }

@@ -11,13 +11,16 @@ import (
 // chunkRows is how many rows a worker judges at a time: enough that handing them over costs nothing.
 const chunkRows = 1024
 
-// trained is a fit with the rows it was made from.
+// trained is a fit with the rows it was made from. What a journal tells of a fit that a sliding window has left behind
+// lacks snapshot and scores: no row is judged by it again.
 type trained struct {
 	snapshot Snapshot
 	id       string
 	facts    *model.Facts
 	view     *window.View
 	scores   []model.Score // one a row of view, each by a model that did not see the row's own label
+
+	disagree, scored int // how many of scores disagree with the label, and how many can tell
 }
 
 // judges is a fixed set of goroutines that judge rows side by side. What they say does not depend on their number.

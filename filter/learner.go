@@ -47,6 +47,18 @@ func (l learner) Fit(ctx context.Context, t *model.Table) (*Fit, error) {
 	return &Fit{Snapshot: snapshot{r.Snapshot}, Scores: r.Scores}, nil
 }
 
+// Skip implements Resumer.
+func (l learner) Skip(n uint64) { l.tr.Skip(n) }
+
+// Load implements Resumer.
+func (l learner) Load(r io.Reader) (Snapshot, error) {
+	s, err := model.ReadSnapshot(r)
+	if err != nil {
+		return nil, err
+	}
+	return snapshot{s}, nil
+}
+
 // snapshot turns a *model.Snapshot into a Snapshot; only NewScorer differs in its result.
 type snapshot struct{ *model.Snapshot }
 

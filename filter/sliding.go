@@ -19,8 +19,7 @@ import (
 // Before the first snapshot step 2 is missing, and rows wait, as many as Bytes allows, instead of Hold rows.
 type slide struct {
 	*engine
-	win     *window.Window
-	learner Learner
+	win *window.Window
 
 	firstFit int64 // labelled rows at which the first retrain is due
 	labelled int64 // rows so far that have a label
@@ -32,7 +31,7 @@ type slide struct {
 	cutting bool  // retrains leave out the rows before since
 }
 
-func (e *engine) newSlide(l Learner) (*slide, error) {
+func (e *engine) newSlide() (*slide, error) {
 	c := e.s.Config
 	p := window.Policy{Records: c.Records, Span: c.Span, Bytes: c.Bytes, Keep: window.Latest,
 		Floor: window.Default().Floor, Seed: c.Seed}
@@ -43,7 +42,7 @@ func (e *engine) newSlide(l Learner) (*slide, error) {
 	if err != nil {
 		return nil, err
 	}
-	return &slide{engine: e, win: w, learner: l, firstFit: firstFit(c.Records)}, nil
+	return &slide{engine: e, win: w, firstFit: firstFit(c.Records)}, nil
 }
 
 // leastFirst is the fewest labelled rows the first snapshot is trained on, when the window holds that many.
@@ -53,14 +52,14 @@ const leastFirst = 500
 func firstFit(records int) int64 { return int64(min(records, max(leastFirst, records/10))) }
 
 // slidingInput judges the input with a window that slides over it.
-func (s *Sweep) slidingInput(ctx context.Context, watch *stopwatch, l Learner) (*Report, error) {
+func (s *Sweep) slidingInput(ctx context.Context, watch *stopwatch, rec *recorder) (*Report, error) {
 	source, err := s.Open(ctx)
 	if err != nil {
 		return nil, err
 	}
-	e := newEngine(ctx, s, watch, -1)
+	e := newEngine(ctx, s, watch, rec, -1)
 	in := startReading(ctx, source, watch, s.Config.Span != window.NoSpan)
-	sl, err := e.newSlide(l)
+	sl, err := e.newSlide()
 	if err == nil {
 		err = sl.run(ctx, in)
 	}
@@ -217,7 +216,7 @@ func (s *slide) retrain(ctx context.Context) (bool, error) {
 			return false, err
 		}
 	}
-	ok, err := s.train(ctx, s.learner, v)
+	ok, err := s.train(ctx, v)
 	c.caughtUp = c.caughtUp || ok && cut
 	return ok, err
 }

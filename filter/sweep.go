@@ -24,6 +24,10 @@ type Sweep struct {
 
 	Learner Learner // nil: a model.Trainer with the configured seed, precision and workers
 
+	// Journal, if set, is where what was trained and judged is kept, and taken from when an interrupted sweep left it
+	// there. The Learner must be a Resumer then.
+	Journal *Journal
+
 	// Progress, if set, is told what is being done: a phase's name, how much is done and of how much, 0 when not
 	// known. It is called from one goroutine at a time.
 	Progress func(phase string, done, total int64)
@@ -76,11 +80,18 @@ func (s *Sweep) run(ctx context.Context) (*Report, error) {
 	if l == nil {
 		l = s.trainer(watch)
 	}
+	rec, err := newRecorder(l, s.Journal, !s.Config.Sliding)
+	if err != nil {
+		return nil, err
+	}
 	judge := s.wholeInput
 	if s.Config.Sliding {
 		judge = s.slidingInput
 	}
-	r, err := judge(ctx, watch, l)
+	r, err := judge(ctx, watch, rec)
+	if err == nil {
+		err = rec.end()
+	}
 	if err != nil {
 		return nil, err
 	}

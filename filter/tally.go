@@ -120,7 +120,7 @@ func (e *engine) report() *Report {
 	}
 	t.close()
 	f := t.newest.facts
-	r.Snapshot, r.Threshold, r.Window.Trained = t.newest.snapshot.ID(), Number(f.Threshold), f.Rows
+	r.Snapshot, r.Threshold, r.Window.Trained = t.newest.id, Number(f.Threshold), f.Rows
 	r.Choice = &Choice{Encoder: f.Choice.Encoder, Q: Number(f.Choice.Q), Lambda: Number(f.Choice.Lambda),
 		Why: f.Choice.Why, Members: []Member{}}
 	for _, m := range f.Choice.Members {

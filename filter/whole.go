@@ -50,13 +50,13 @@ func (s *Sweep) sampleAll(ctx context.Context, watch *stopwatch) (sm *sample, er
 }
 
 // wholeInput judges the input with all of it as one window: read and sample it, train once, read it again and judge.
-func (s *Sweep) wholeInput(ctx context.Context, watch *stopwatch, l Learner) (*Report, error) {
+func (s *Sweep) wholeInput(ctx context.Context, watch *stopwatch, rec *recorder) (*Report, error) {
 	sm, err := s.sampleAll(ctx, watch)
 	if err != nil {
 		return nil, err
 	}
-	e := newEngine(ctx, s, watch, sm.print.rows)
-	err = e.trainAndJudge(ctx, l, sm)
+	e := newEngine(ctx, s, watch, rec, sm.print.rows)
+	err = e.trainAndJudge(ctx, sm)
 	if failed := e.stop(); err == nil { // else err says the same, or what came before
 		err = failed
 	}
@@ -73,9 +73,9 @@ func (s *Sweep) wholeInput(ctx context.Context, watch *stopwatch, l Learner) (*R
 	return r, nil
 }
 
-func (e *engine) trainAndJudge(ctx context.Context, l Learner, sm *sample) error {
+func (e *engine) trainAndJudge(ctx context.Context, sm *sample) error {
 	if len(sm.view.Rows) > 0 {
-		if _, err := e.train(ctx, l, sm.view); err != nil {
+		if _, err := e.train(ctx, sm.view); err != nil {
 			return err
 		}
 	}
