@@ -20,6 +20,8 @@ type fitting struct {
 	mu      sync.Mutex // guards scores, linear and done while folds run in parallel
 	votes   [learn.Forests][]float64
 	scores  map[learn.Setting][]float64 // out of fold, by setting
+	place   []int32                     // of each row in scores while few of them have any; nil: its own number
+	placed  int                         // rows with a place
 	linear  map[learn.Setting]learn.Linear
 	tallies map[int][]learn.Tally // by fold number, so that sums do not depend on which fold is done first
 	done    int

@@ -36,9 +36,10 @@ const fewestForWalk = 0.1
 const preferLambda = 3
 
 // choose picks for each design the setting with the highest evidence out of fold. scores holds, by setting, the class
-// scores of all rows; only rows that trial marks count.
+// scores of the trial rows (nil: of all).
 func (in *intake) choose(scores map[learn.Setting][]float64, trial []int32) []learn.Setting {
 	var out []learn.Setting
+	rows := in.subset(trial)
 	for i := range learn.Designs {
 		best, at := math.Inf(-1), -1
 		var all []learn.Setting
@@ -49,7 +50,9 @@ func (in *intake) choose(scores map[learn.Setting][]float64, trial []int32) []le
 					continue
 				}
 				all = append(all, s)
-				_, e := noise.Quick(in.subset(trial, scores[s]))
+				d := *rows
+				d.Members = [][]float64{scores[s]}
+				_, e := noise.Quick(&d)
 				if e += float64(step) * preferLambda; e > best {
 					best, at = e, len(all)-1
 				}

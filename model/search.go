@@ -19,6 +19,7 @@ func (f *fitting) cold(ctx context.Context) (*noise.Layer, *noise.Facts, error) 
 	held := f.folds[:len(f.folds)-1]
 	trial := held[:f.trials(len(held))]
 	none := chain.PortfolioOptions{}
+	rows := f.narrow(len(trial))
 	err := f.each(ctx, "search", 1, trial, func(fold *learn.Fold, rng *rand.Rand, s *chain.Scratch) {
 		for i := range learn.Designs {
 			for _, lambda := range learn.Designs[i].Lambdas {
@@ -30,14 +31,9 @@ func (f *fitting) cold(ctx context.Context) (*noise.Layer, *noise.Facts, error) 
 	if err != nil {
 		return nil, nil, err
 	}
-	var rows []int32
-	for i, at := range f.fold {
-		if int(at) < len(trial) {
-			rows = append(rows, int32(i))
-		}
-	}
 	first := f.choose(f.scores, rows)
 	f.keep(settings(first, learn.Qs[:]))
+	f.widen(rows)
 	err = f.each(ctx, "chains", 2, held[len(trial):], func(fold *learn.Fold, rng *rand.Rand, s *chain.Scratch) {
 		for _, set := range first {
 			f.solve(fold, set.Design, set.Lambda, learn.Qs[:], none, rng, s)

@@ -17,6 +17,13 @@ const (
 	likeness = 8
 )
 
+// With more than manyClasses classes, those less probable than unlikely are left out of a row's share in the Hessian of the
+// biases, but for its diagonal: what is left stays positive definite, and the gradient, which decides where steps end, has all.
+const (
+	manyClasses = 12
+	unlikely    = 1e-4
+)
+
 // newton gathers gradient and Hessian of Σ post·log softmax(η) in the member weights, biases and slopes over one pass
 // and takes one damped step.
 type newton struct {
@@ -26,6 +33,7 @@ type newton struct {
 	x       []float64 // dim·k: ∂η_c/∂θ of the current row, for members and slopes only
 	mean    []float64
 	size    []float64 // root mean square score of each member
+	likely  []int     // classes of the current row that count for the biases' part of the Hessian
 }
 
 func newNewton(d *Data, p *Params) *newton {
@@ -106,14 +114,22 @@ func (n *newton) add(p *Params, r *row, members [][]float64, i int, w float64) {
 			n.hess[h*dim+j] += w * (s - mean*n.mean[h])
 		}
 	}
-	for c := range k {
-		n.grad[f+c] += w * (r.post[c] - r.prob[c])
+	n.likely = n.likely[:0]
+	for c, p := range r.prob {
+		if k <= manyClasses || p > unlikely {
+			n.likely = append(n.likely, c)
+		}
+		n.grad[f+c] += w * (r.post[c] - p)
+	}
+	for at, c := range n.likely {
 		pc := w * r.prob[c]
 		row := n.hess[(f+c)*dim+f : (f+c)*dim+f+k]
-		for e := c; e < k; e++ {
+		for _, e := range n.likely[at:] {
 			row[e] -= pc * r.prob[e]
 		}
-		row[c] += pc
+	}
+	for c, p := range r.prob {
+		n.hess[(f+c)*(dim+1)] += w * p
 	}
 }
 
