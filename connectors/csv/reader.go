@@ -86,6 +86,7 @@ func (c *columns) keep() {
 
 // Columns implements textrows.Rows.
 func (c *columns) Columns() []arrow.Array {
+	c.whole = nil // Next sets it anew; a very long row should not stay in memory
 	arrs := make([]arrow.Array, 0, len(c.cells)+1)
 	for i := range c.cells {
 		arrs = append(arrs, c.cells[i].Take(c.header.types[i], c.opt.Memory))

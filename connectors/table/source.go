@@ -172,13 +172,14 @@ func (s *Source) Next(ctx context.Context) (*filter.Batch, error) {
 }
 
 func (s *Source) next() (*filter.Batch, error) {
-	for s.cur == nil || s.at == s.cur.NumRows() {
-		s.drop()
+	for s.cur == nil {
 		rec, err := s.in.next()
 		if err != nil {
 			return nil, err // io.EOF too
 		}
-		s.cur, s.at = rec, 0
+		if s.cur, s.at = rec, 0; rec.NumRows() == 0 {
+			s.drop()
+		}
 	}
 	part := s.cur.NewSlice(s.at, min(s.at+int64(s.opt.Rows), s.cur.NumRows()))
 	b, err := s.batch(part)
@@ -186,8 +187,10 @@ func (s *Source) next() (*filter.Batch, error) {
 		part.Release()
 		return nil, err
 	}
-	s.at += part.NumRows()
 	s.row += part.NumRows()
+	if s.at += part.NumRows(); s.at == s.cur.NumRows() {
+		s.drop() // a source may rest here for long
+	}
 	return b, nil
 }
 

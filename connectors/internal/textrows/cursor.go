@@ -51,7 +51,7 @@ func (c *Cursor) Step() error {
 // rest skips the row, which must not be used any more, and gives back what memory it took beyond the usual.
 func (c *Cursor) rest() {
 	c.Feed.Skip(c.Skip)
-	c.Skip = 0
+	c.Skip, c.Row = 0, nil
 	c.Feed.Trim()
 }
 
