@@ -27,7 +27,7 @@ is set against what was planted.`,
 
 func demoFlags(o *demo.Options) []argv.Flag {
 	return []argv.Flag{
-		{Name: "rows", Takes: "COUNT", Brief: "apples on the line (6000)", Set: func(v string) (err error) {
+		{Name: "rows", Takes: "COUNT", Brief: "apples on the line (8000)", Set: func(v string) (err error) {
 			if o.Rows, err = strconv.Atoi(v); err != nil || o.Rows < demo.MinRows {
 				return fmt.Errorf("%q is not a whole number from %d on", v, demo.MinRows)
 			}

@@ -12,14 +12,15 @@ const (
 	draws      = 12
 	drawnSteps = 6
 	caution    = 2    // on the expected good rows: what is held back was picked for its high scores
-	unseen     = 4.0  // rows of n that are odd in a way no model here knows of: added to the chance of each to be good
-	lowest     = 0.9  // score that may ever be held back: below it the average would be carried by the rows above
+	odd        = 2.0  // good rows expected among those held back, whatever the model says
+	unseen     = 6.0  // rows of n that are odd in a way no model here knows of: added to the chance of each to be good
+	lowest     = 0.92 // score that may ever be held back: below it the average would be carried by the rows above
 	drawnRows  = 6000 // a bootstrap on more rows looks at the first so many
 )
 
 // Threshold is the lowest score that may be held back so that the expected share of good labels among all rows scored
 // as high stays at or below 1 − precision: the largest prefix of the ranking whose upper bound
-// (2·c + 1 + 1.28·√(v + v_b))/k does, c = Σ(1−p + 4/n), v = Σp(1−p) (Bayesian false discovery rate: Newton et al. 2004; Storey
+// (2·c + 2 + 1.28·√(v + v_b))/k does, c = Σ(1−p + 6/n), v = Σp(1−p) (Bayesian false discovery rate: Newton et al. 2004; Storey
 // 2003). v_b is the variance of c under refits to rows with random exponential weights (Rubin 1981). The result is
 // above 1 when no row may be held back. scores[i] is the mislabel score of row i.
 func Threshold(d *Data, l *Layer, scores []float64, precision float64, rng *rand.Rand) float64 {
@@ -53,7 +54,7 @@ func Threshold(d *Data, l *Layer, scores []float64, precision float64, rng *rand
 				vb = up / z80 * up / z80
 			}
 		}
-		if (caution*c+1+z80*math.Sqrt(v+vb))/float64(k+1) <= 1-precision {
+		if (caution*c+odd+z80*math.Sqrt(v+vb))/float64(k+1) <= 1-precision {
 			best = p
 		}
 	}

@@ -18,7 +18,7 @@ import (
 
 // Options of a demo.
 type Options struct {
-	Rows   int    // apples; default 6000
+	Rows   int    // apples; default 8000
 	Seed   uint64 // of the harvest and of the sweep; default 1
 	Window int    // rows of a sliding window; default 0: the whole line is one window
 	Dir    string // folder to keep the files in; empty: a temporary one that is removed
@@ -28,7 +28,7 @@ type Options struct {
 const MinRows = 500
 
 // DefaultOptions gives the defaults named in Options.
-func DefaultOptions() Options { return Options{Rows: 6000, Seed: 1} }
+func DefaultOptions() Options { return Options{Rows: 8000, Seed: 1} }
 
 // Run grows a harvest, sweeps it, and writes to out what was planted and found. The files it keeps are line.arrow and
 // planted.arrow, and passed.arrow, held.arrow, report.json and last.weir from the sweep; none of them may exist.
