@@ -134,5 +134,6 @@ func (e *engine) report() *Report {
 	if t.retrains.Cold+t.retrains.Warm > 1 {
 		r.Latest = latest
 	}
+	r.Notes = append(r.Notes, telltales(t.newest.view.Table)...)
 	return r
 }
