@@ -157,8 +157,14 @@ const swiftRows = 8000
 
 // warm refits the plan of the last training.
 func (f *fitting) warm(ctx context.Context, stage uint64, last *noise.Layer) (*noise.Layer, *noise.Facts, error) {
-	if err := f.grow(ctx, stage<<2); err != nil {
-		return nil, nil, err
+	if f.walks() {
+		if err := f.grow(ctx, stage<<2); err != nil {
+			return nil, nil, err
+		}
+	} else {
+		for _, fold := range f.folds {
+			fold.Rest(f.fold)
+		}
 	}
 	o := chain.PortfolioOptions{WarmEpochs: 5, Hysteresis: 1e-3}
 	if f.data.Rows() >= swiftRows {

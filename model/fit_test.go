@@ -11,6 +11,9 @@ import (
 	"strconv"
 	"strings"
 	"testing"
+
+	"labelweir/model/internal/forest"
+	"labelweir/model/internal/learn"
 )
 
 var nan = math.NaN()
@@ -300,6 +303,50 @@ func TestProgressTellsEveryPhaseToItsEnd(t *testing.T) {
 	for p, at := range last {
 		if at[0] != at[1] {
 			t.Errorf("%s ended at %d of %d", p, at[0], at[1])
+		}
+	}
+}
+
+func TestForestsRestWhenThePlanHasNoUseForThem(t *testing.T) {
+	r := small
+	tr := NewTrainer(quick())
+	table, _ := r.table()
+	if _, err := tr.Fit(context.Background(), table); err != nil {
+		t.Fatal(err)
+	}
+	var at []int
+	var plan []member
+	for i, m := range tr.last.plan {
+		if m.forest < 0 && learn.Designs[m.setting.Design].Leaf == 0 {
+			at, plan = append(at, i), append(plan, m)
+		}
+	}
+	if len(at) == 0 {
+		t.Fatal("no plain scorer in the plan: the test needs another table")
+	}
+	tr.last.plan = plan
+	tr.layer.Keep(at)
+	var was []*forest.Forest
+	for _, fold := range tr.last.folds {
+		was = append(was, fold.Forest[learn.Cleaned])
+	}
+	for range 2 {
+		r.first += 6
+		table, truth := r.table()
+		res, err := tr.Fit(context.Background(), table)
+		if err != nil {
+			t.Fatal(err)
+		}
+		if !res.Snapshot.Facts().Warm {
+			t.Error("the fit is not warm")
+		}
+		if ap := averagePrecision(res.Scores, table.Labels, truth); ap < 0.5 {
+			t.Errorf("average precision %.3f", ap)
+		}
+	}
+	for i, fold := range tr.last.folds {
+		if fold.Forest[learn.Cleaned] != was[i] {
+			t.Errorf("fold %d has another forest", i)
 		}
 	}
 }

@@ -3,6 +3,7 @@ package model
 import (
 	"fmt"
 	"math"
+	"slices"
 
 	"labelweir/model/internal/learn"
 	"labelweir/model/internal/noise"
@@ -23,6 +24,13 @@ func (m member) String() string {
 		return "vote of trees on cleaned labels"
 	}
 	return fmt.Sprintf("bounded loss on %s, λ=%g, q=%g", learn.Designs[m.setting.Design].Name, m.setting.Lambda, m.setting.Q)
+}
+
+// walks tells whether the plan needs forests: their votes, or their leaves as features.
+func (f *fitting) walks() bool {
+	return slices.ContainsFunc(f.plan, func(m member) bool {
+		return m.forest >= 0 || learn.Designs[m.setting.Design].Leaf > 0
+	})
 }
 
 // fewest is the spread in logits below which a member is left out.

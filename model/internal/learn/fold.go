@@ -32,12 +32,7 @@ const regrow = 0.05
 // Grow brings the fold's forests up to date with d: all trees anew on a cold fit, some on a warm one. fold gives each
 // row's fold.
 func (f *Fold) Grow(d *Data, fold []uint8, rng *rand.Rand) {
-	f.train = f.train[:0]
-	for i, k := range fold {
-		if int(k) != f.Number {
-			f.train = append(f.train, int32(i))
-		}
-	}
+	f.hold(fold)
 	n := TreeCount(d.Rows())
 	first, count := 0, n
 	if d.Old != nil && len(f.trees[Raw]) > 0 {
@@ -63,6 +58,22 @@ func (f *Fold) Grow(d *Data, fold []uint8, rng *rand.Rand) {
 	f.replace(Cleaned, first, forest.Grow(d.Bins, rows, d.Classes, count, o, rng))
 	f.walk(Cleaned, d, first, count)
 	f.next = (first + count) % n
+}
+
+// Rest takes on other rows with the forests left as they are, for a warm fit in which neither votes nor leaves are read.
+func (f *Fold) Rest(fold []uint8) {
+	f.hold(fold)
+	f.leaves = [Forests][]int32{} // of the rows before
+}
+
+// hold sets the rows to train on: all that are not held out.
+func (f *Fold) hold(fold []uint8) {
+	f.train = f.train[:0]
+	for i, k := range fold {
+		if int(k) != f.Number {
+			f.train = append(f.train, int32(i))
+		}
+	}
 }
 
 // replace puts new trees in the places from first on, round the end.

@@ -37,8 +37,11 @@ func (f *Fold) Input(d *Data, i int, in *Input) {
 		m := d.Kernels[j].Size() + 1
 		in.Smooth = append(in.Smooth, x[i*m:(i+1)*m])
 	}
-	t := len(f.Forest[Cleaned].Trees)
-	in.Leaves = f.leaves[Cleaned][i*t : (i+1)*t]
+	in.Leaves = nil
+	if ids := f.leaves[Cleaned]; ids != nil {
+		t := len(f.Forest[Cleaned].Trees)
+		in.Leaves = ids[i*t : (i+1)*t]
+	}
 }
 
 // Vote writes the class scores by which forest which judges row i.
