@@ -86,11 +86,18 @@ func OpenJournal(f JournalFile, conditions []Condition) (*Journal, error) {
 	}
 	j.last = point{binary.LittleEndian.Uint64(mark), binary.LittleEndian.Uint64(mark[8:]),
 		int64(binary.LittleEndian.Uint64(mark[16:])), binary.LittleEndian.Uint64(mark[24:])}
+	if j.last.trainings == 0 { // there is nothing to go on with
+		file.Clear()
+		return j, nil
+	}
 	j.resumed = true
-	return j, j.compare()
+	if err := j.compare(); err != nil {
+		return nil, err
+	}
+	return j, nil
 }
 
-// Taken tells what a sweep with this journal need not do again: trainings, and the rows read until then.
+// Taken tells what the next sweep with this journal need not do again: trainings, and the rows read until then.
 func (j *Journal) Taken() (trainings int, rows int64) { return int(j.last.trainings), j.last.rows }
 
 // compare holds the journal's conditions against those of now.
@@ -144,7 +151,11 @@ func (j *Journal) mark(p point) error {
 	for _, v := range []uint64{p.trainings, p.snapshots, uint64(p.rows), p.next} {
 		b = binary.LittleEndian.AppendUint64(b, v)
 	}
-	return j.file.Mark(b)
+	if err := j.file.Mark(b); err != nil {
+		return err
+	}
+	j.last = p
+	return nil
 }
 
 func appendText[T string | []byte](b []byte, s T) []byte {

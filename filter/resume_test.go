@@ -237,8 +237,8 @@ func TestResumedSweepsTrainLess(t *testing.T) {
 		r, l = resumable(t, apples, modes()[mode], nil, f)
 		interrupt(t, r, l, 3000)
 		r, l = resumable(t, apples, modes()[mode], nil, f)
-		r.do(t)
 		taken, rows := r.sweep.Journal.Taken()
+		r.do(t)
 		if l.made+taken != all || taken == 0 || mode == "whole" && l.made > 0 || mode != "whole" && 2*l.made > all || rows < 2000 {
 			t.Errorf("%s: %d trainings, of which %d up to row %d were taken over and %d made", mode, all, taken, rows, l.made)
 		}
@@ -320,11 +320,17 @@ func TestJournalsOfOtherRowsAreRefused(t *testing.T) {
 
 func TestOtherConditionsAreNamed(t *testing.T) {
 	f := &paper{}
-	r, l := resumable(t, pack(1000, 0.1, 0, 3), modes()["sliding"], nil, f)
+	other := []Condition{{"seed", "2"}}
+	r, l := resumable(t, pack(3000, 0.1, 0, 3), modes()["sliding"], nil, f)
 	interrupt(t, r, l, 0)
+	if _, err := OpenJournal(f, other); err != nil {
+		t.Errorf("there is no training to go on with: got %v", err)
+	}
+	r, l = resumable(t, pack(3000, 0.1, 0, 3), modes()["sliding"], nil, f)
+	interrupt(t, r, l, 2900)
 	before := bytes.Clone(f.b)
 	for want, now := range map[string][]Condition{
-		`seed "1", not "2"`: {{"seed", "2"}},
+		`seed "1", not "2"`: other,
 		`mode "", not "x"`:  {{"seed", "1"}, {"mode", "x"}},
 		`seed "1", not ""`:  {},
 	} {
@@ -377,10 +383,10 @@ func TestTheRealModelIsResumed(t *testing.T) {
 		r := make(f)
 		interrupt(t, r, &tiring{}, 600)
 		r = make(f)
-		got := outcome(r)
 		if taken, _ := r.sweep.Journal.Taken(); taken == 0 {
 			t.Errorf("%s: nothing was taken over", name)
 		}
+		got := outcome(r)
 		if got != want {
 			t.Errorf("%s: %s", name, firstDifference(got, want))
 		}

@@ -59,6 +59,7 @@ type Output struct {
 	Report     string // output.file.report
 	Snapshot   string // output.file.snapshot
 	Replace    bool   // output.file.replace: whether files that exist may be replaced; default false
+	Resume     bool   // output.file.resume: whether a journal is kept, and one that is there is gone on with; default false
 }
 
 // MemoryLimit is how many bytes more than at its start the guarded process may take: as set, else room for what is not

@@ -66,7 +66,7 @@ func TestEverySettingCanComeFromTheEnvironment(t *testing.T) {
 		"input.format": "parquet", "input.delimiter": "tab", "output.format": "csv",
 		"input.trust": "true", "input.memory": "1GiB", "window.slide": "true", "retrain.every": "7", "retrain.seed": "18446744073709551615", "retrain.workers": "17",
 		"filter.mode": "divert", "filter.precision": "0.9", "filter.budget": "1%", "filter.hold": "4",
-		"filter.cooldown": "9", "filter.gate": "1.5%", "output.file.replace": "true",
+		"filter.cooldown": "9", "filter.gate": "1.5%", "output.file.replace": "true", "output.file.resume": "true",
 	}
 	for _, s := range Settings() {
 		value := values[s.Path]

@@ -106,5 +106,7 @@ func Settings() []Setting {
 			func(c *Config) *string { return &c.Output.Snapshot }, parseName, formatName),
 		setting("output.file.replace", "replace", "", "replace output files that exist",
 			func(c *Config) *bool { return &c.Output.Replace }, parseSwitch, formatSwitch),
+		setting("output.file.resume", "resume", "", "go on where an interrupted sweep stopped, and keep what that takes",
+			func(c *Config) *bool { return &c.Output.Resume }, parseSwitch, formatSwitch),
 	}
 }

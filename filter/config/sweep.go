@@ -106,6 +106,13 @@ func (k *checker) pipes(c *Config) {
 	if names := c.Input.Files(); len(names) > 1 && slices.Contains(names, Pipe) {
 		k.add("input.file.path", "standard input can't be read together with files; name one or the other")
 	}
+	switch {
+	case !c.Output.Resume:
+	case slices.Contains(c.Input.Files(), Pipe):
+		k.add("output.file.resume", "standard input can't be read again from its beginning; name a file to read, or leave it out")
+	case c.Output.Tagged == Pipe:
+		k.add("output.file.resume", "standard output can't be written again from its beginning; name a file for --out, or leave it out")
+	}
 	for _, f := range []struct{ path, name string }{
 		{"output.file.quarantine", c.Output.Quarantine}, {"output.file.unreadable", c.Output.Unreadable},
 		{"output.file.report", c.Output.Report}, {"output.file.snapshot", c.Output.Snapshot},

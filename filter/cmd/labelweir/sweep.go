@@ -48,6 +48,8 @@ func sweepExamples() []example {
 			"cat grading.jsonl | labelweir sweep - --format jsonlines --label grade --out - > tagged.jsonl"},
 		{"fail a pipeline when more than a fifth of the labels seem wrong, with settings from a file",
 			"labelweir sweep grading.arrow -c weir.yaml --gate 20% --snapshot last.weir"},
+		{"keep a journal of a long sweep, and go on with it where the sweep was interrupted",
+			"labelweir sweep grading.arrow --label grade --window 300 --retrain 50% --out long.arrow --resume"},
 		{"read a file of your own making in the process itself, with no limit of memory",
 			"labelweir sweep grading.arrow --label grade --trust --out trusted.arrow"},
 	}
@@ -92,8 +94,13 @@ func runSweep(ctx context.Context, p *process, args []string) error {
 		Chosen:   func(choice []table.Choice) { tellChoice(p, choice) },
 		Progress: bar.Show,
 		Marks:    p.marks,
-		In:       p.in,
-		Out:      p.out,
+		Tell: func(sentence string) {
+			bar.Clear()
+			fmt.Fprintln(p.err, sentence)
+		},
+		Program: version(),
+		In:      p.in,
+		Out:     p.out,
 	})
 	bar.Clear()
 	if err != nil {

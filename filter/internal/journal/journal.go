@@ -76,6 +76,9 @@ func Open(f File) (*Journal, error) {
 // Last gives the bytes of the last mark, and how many marks there are; 0 when the journal holds nothing.
 func (j *Journal) Last() (mark []byte, marks int) { return j.kept.bytes, j.kept.marks }
 
+// Clear has the journal hold nothing; the file is cut when something is written.
+func (j *Journal) Clear() { j.kept = kept{} }
+
 // Stream reads what a stream holds up to the last mark that was there at Open. Several may be read side by side.
 func (j *Journal) Stream(number int) io.Reader {
 	if j.kept.end == 0 {

@@ -149,6 +149,25 @@ func TestWritingGoesOnBehindTheLastMark(t *testing.T) {
 	}
 }
 
+func TestClearedJournalsBeginAnew(t *testing.T) {
+	f := &memory{}
+	history(t, f, rand.New(rand.NewPCG(3, 1)), 60)
+	j, err := Open(f)
+	if err != nil {
+		t.Fatal(err)
+	}
+	j.Clear()
+	if got, err := io.ReadAll(j.Stream(1)); len(got) > 0 || err != nil {
+		t.Errorf("it holds %q, %v", got, err)
+	}
+	if err := errors.Join(j.Write(1, []byte("new")), j.Mark([]byte("part 0"))); err != nil {
+		t.Fatal(err)
+	}
+	if marks := check(t, f, [][3][]byte{{1: []byte("new")}}); marks != 1 {
+		t.Errorf("%d marks", marks)
+	}
+}
+
 func TestOthersFilesAreLeftAlone(t *testing.T) {
 	for _, text := range []string{"a", "grade,diameter_mm\n", "LWRESUMX\x01\x00", "LWRESUME\x02\x00", "LX"} {
 		f := &memory{b: []byte(text)}

@@ -20,6 +20,8 @@ import (
 type Watch struct {
 	Chosen   func([]table.Choice)                  // once, when the columns are known and the outputs can be created
 	Progress func(phase string, done, total int64) // from one goroutine at a time
+	Tell     func(sentence string)                 // what a person should know of a journal
+	Program  string                                // which build this is; a journal is for the same one
 	Marks    *guard.Marks                          // where the sweep is, for who outlives it
 	Disk     disk.FS                               // where outputs go; nil: the machine's disk
 	In       io.Reader                             // standard input
@@ -73,6 +75,11 @@ func Run(ctx context.Context, c *config.Config, w Watch) (*filter.Report, error)
 	if w.Chosen != nil {
 		w.Chosen(choice)
 	}
+	journal, err := openJournal(c, files, w)
+	if err != nil {
+		return nil, err
+	}
+	defer journal.close()
 	var last filter.Snapshot
 	readings := 0
 	s := filter.Sweep{
@@ -91,12 +98,14 @@ func Run(ctx context.Context, c *config.Config, w Watch) (*filter.Report, error)
 			}
 		},
 		Learner:    w.Learner,
+		Journal:    journal.kept(),
 		OnSnapshot: func(s filter.Snapshot) { last = s },
 		Now:        w.Now,
 	}
 	report, err := s.Run(ctx)
 	if err != nil {
-		return nil, err
+		journal.tellKept(w)
+		return nil, journal.explain(err)
 	}
 	report.Fields = used(choice)
 	report.Rows.Unreadable += unread.count()
@@ -122,7 +131,11 @@ func Run(ctx context.Context, c *config.Config, w Watch) (*filter.Report, error)
 		return nil, err
 	}
 	w.Marks.Phase("place")
-	return report, sink.CommitWith(ctx, snapshotFile, reportFile, unread.target())
+	if err := sink.CommitWith(ctx, snapshotFile, reportFile, unread.target()); err != nil {
+		return report, err
+	}
+	journal.remove()
+	return report, nil
 }
 
 // optionsOf gives what files are read and written with.
