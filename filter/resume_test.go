@@ -365,7 +365,7 @@ func TestTheRealModelIsResumed(t *testing.T) {
 		"sliding": func(c *Config) { c.Sliding, c.Records, c.Hold, c.Retrain = true, 100, 30, Every{Rows: 8} },
 	} {
 		rng := rand.New(rand.NewPCG(4, 4))
-		apples := pack(700+rng.IntN(50), 0.1, 0, 8)
+		apples := pack(470+rng.IntN(20), 0.1, 0, 8)
 		make := func(f *paper) *run {
 			r := newRun(apples, change)
 			r.sweep.Learner = nil
@@ -381,7 +381,7 @@ func TestTheRealModelIsResumed(t *testing.T) {
 		want := outcome(make(nil))
 		f := &paper{}
 		r := make(f)
-		interrupt(t, r, &tiring{}, 600)
+		interrupt(t, r, &tiring{}, 450)
 		r = make(f)
 		if taken, _ := r.sweep.Journal.Taken(); taken == 0 {
 			t.Errorf("%s: nothing was taken over", name)
