@@ -53,6 +53,15 @@ type Scratch struct {
 	top   mark       // the lowest point of a shaken run
 
 	lattice lattice // of annealed runs
+
+	room []float32 // see Room
+}
+
+// Room lends memory for n numbers of any value, for a design that is made anew again and again. It is the caller's until the
+// next call; runs do not touch it.
+func (s *Scratch) Room(n int) []float32 {
+	s.room = resize(s.room, n)
+	return s.room
 }
 
 // resize gives s length n without keeping its contents.

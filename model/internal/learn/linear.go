@@ -53,7 +53,7 @@ func (f *Fold) Solve(d *Data, design int, lambda float64, qs []float64, o chain.
 	if des.Kernel > 0 && d.Kernels[des.Kernel-1] == nil || des.Leaf > 0 && d.Leafless {
 		return nil
 	}
-	m := f.matrix(d, des)
+	m := f.matrix(d, des, s)
 	if f.runs == nil {
 		f.runs = make(map[run]*done)
 	}
@@ -177,15 +177,15 @@ func carried(d *Data, p *chain.Problem, last *done) (index []int32, changed []bo
 	return index, changed
 }
 
-// matrix is the design matrix of all rows.
-func (f *Fold) matrix(d *Data, des *Design) *chain.Design {
+// matrix is the design matrix of all rows; its numbers may be in s and last until the next call.
+func (f *Fold) matrix(d *Data, des *Design, s *chain.Scratch) *chain.Design {
 	n := d.Rows()
 	m := &chain.Design{N: n, Dense: d.Dense, X: d.X}
 	if des.Kernel > 0 {
 		m.Dense, m.X = d.Kernels[des.Kernel-1].Size()+1, d.Smooth[des.Kernel-1]
 	}
 	if des.Number != 1 {
-		scaled := make([]float32, len(m.X))
+		scaled := s.Room(len(m.X))
 		for i, v := range m.X {
 			scaled[i] = v * float32(des.Number)
 		}
