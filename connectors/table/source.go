@@ -320,6 +320,7 @@ func (s *Source) Close() error {
 	}
 	s.closed = true
 	s.drop()
+	s.trays.drop()
 	return s.in.close()
 }
 

@@ -42,6 +42,13 @@ func (p *trays) put(t *tray) {
 	}
 }
 
+// drop lets the free ones go.
+func (p *trays) drop() {
+	p.mu.Lock()
+	defer p.mu.Unlock()
+	p.free = nil
+}
+
 // emptied is s without elements, with room for n.
 func emptied[T any](s []T, n int) []T {
 	if cap(s) < n {

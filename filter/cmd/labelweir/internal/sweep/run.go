@@ -72,6 +72,9 @@ func Run(ctx context.Context, c *config.Config, w Watch) (*filter.Report, error)
 		return nil, err
 	}
 	defer sink.Close()
+	if err := first.Close(); err != nil { // its record batch is not to stay in memory while the model learns
+		return nil, err
+	}
 	if w.Chosen != nil {
 		w.Chosen(choice)
 	}
