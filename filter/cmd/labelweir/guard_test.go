@@ -118,7 +118,7 @@ func TestAKilledChildIsToldOfAndCleanedUpAfter(t *testing.T) {
 	}
 	said, code := r.end()
 	// Most often it trains by now; on a busy machine it may still be reading.
-	begins := map[int]string{exitFailed: "labelweir: sweep: in the phase ", exitInput: "labelweir: " + r.line + ": record batch "}
+	begins := map[int]string{exitFailed: "labelweir: sweep: in the phase ", exitInput: "labelweir: " + r.line + ": "}
 	if begin, ok := begins[code]; !ok || !strings.HasPrefix(said, begin) {
 		t.Errorf("ended with %d and said %q", code, said)
 	}
