@@ -62,7 +62,7 @@ func (w *writer) Write(rec arrow.Record) error {
 		}
 		defer rec.Release()
 	}
-	next := dictionaries(rec)
+	next := table.Dictionaries(rec)
 	if blurred(w.dicts, next) {
 		return errBlurredDictionary
 	}
@@ -111,25 +111,6 @@ func (m *mute) Write(b []byte) (int, error) {
 	return m.w.Write(b)
 }
 
-// dictionaries lists the dictionaries of a record batch, nested ones too, in a fixed order.
-func dictionaries(rec arrow.Record) []arrow.ArrayData {
-	var out []arrow.ArrayData
-	var visit func(d arrow.ArrayData)
-	visit = func(d arrow.ArrayData) {
-		if dict, ok := d.(*array.Data); ok && plain(d.DataType()).ID() == arrow.DICTIONARY {
-			out = append(out, dict.Dictionary())
-			visit(dict.Dictionary())
-		}
-		for _, c := range d.Children() {
-			visit(c)
-		}
-	}
-	for _, c := range rec.Columns() {
-		visit(c.Data())
-	}
-	return out
-}
-
 // blurred tells whether a dictionary differs from the one before by so little that arrow's writer would take them for
 // the same.
 func blurred(a, b []arrow.ArrayData) bool {
@@ -147,12 +128,4 @@ func blurred(a, b []arrow.ArrayData) bool {
 		}
 	}
 	return false
-}
-
-// plain is the storage type of an extension, else the type itself.
-func plain(dt arrow.DataType) arrow.DataType {
-	if ext, ok := dt.(arrow.ExtensionType); ok {
-		return ext.StorageType()
-	}
-	return dt
 }

@@ -101,8 +101,8 @@ func gatherChildren(fields []arrow.Field, can func(arrow.DataType) bool) bool {
 	return true
 }
 
-// dictionaries lists the dictionaries of a record batch, nested ones too, in a fixed order.
-func dictionaries(rec arrow.Record) []arrow.ArrayData {
+// Dictionaries lists the dictionaries of a record batch, nested ones too, in a fixed order.
+func Dictionaries(rec arrow.Record) []arrow.ArrayData {
 	var out []arrow.ArrayData
 	var visit func(d arrow.ArrayData)
 	visit = func(d arrow.ArrayData) {

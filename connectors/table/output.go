@@ -134,7 +134,7 @@ func (o *output) keep(piece arrow.Record) {
 
 // follow ends the block when a dictionary changes, so that each block has its dictionaries as they came.
 func (o *output) follow(piece arrow.Record) error {
-	next := dictionaries(piece)
+	next := Dictionaries(piece)
 	if o.last != nil && equalDicts(o.dicts, next) {
 		return nil
 	}
